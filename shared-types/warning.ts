@@ -1,0 +1,62 @@
+/** What became of a warning; the definitions are the project's scoring rules (server/watch/grading.ts). */
+export type WarningOutcome = 'open' | 'true' | 'repeat' | 'late' | 'false' | 'unseen' | 'acted';
+
+/** What became of a switch. */
+export type SwitchOutcome = 'pending' | 'warned' | 'late' | 'missed' | 'blind';
+
+/** One warning: issued at a time, speaking for a span, with an outcome. Times are channel time unless said. */
+export interface Warning {
+  /** ascending in the order of issue, unique in a store */
+  id: number;
+  watch: string;
+  model: string;
+  channels: string[];
+  /** time of the newest raw sample the warning needed */
+  at: number;
+  /** the span it speaks for: (at + least lead, at + horizon] */
+  from: number;
+  to: number;
+  /** server clock, Unix seconds: when it was computed and when the first page or receiver had it */
+  madeAt: number;
+  deliveredAt: number | null;
+  variable: string;
+  value: number;
+  threshold: number;
+  outcome: WarningOutcome;
+  /** the switch that settled it and its lead, when one did */
+  switchAt: number | null;
+  lead: number | null;
+  acknowledgedAt: number | null;
+  acknowledgedBy: string | null;
+  /** it came too late to speak: made after its span began; no tone, no webhook */
+  quiet: boolean;
+}
+
+/** One switch of a watch's regime. Times are channel time. */
+export interface SwitchEvent {
+  id: number;
+  watch: string;
+  channel: string;
+  /** onset */
+  at: number;
+  confirmedAt: number;
+  /** regime before and after: 0, 1, … from the lowest band up; for one-sided rules 0 quiet, 1 active */
+  from: number;
+  to: number;
+  outcome: SwitchOutcome;
+  /** the first warning that covered it, and its lead in seconds */
+  warning: number | null;
+  lead: number | null;
+}
+
+/** A line of the logbook. */
+export interface LogEntry {
+  id: number;
+  /** server clock, Unix seconds */
+  time: number;
+  kind: 'acknowledged' | 'shelved' | 'unshelved' | 'out of service' | 'in service' | 'gap' | 'hole' | 'refused' | 'model' | 'watch' | 'server' | 'note' | 'likeness';
+  channel: string | null;
+  watch: string | null;
+  by: string | null;
+  text: string;
+}
