@@ -49,4 +49,5 @@ export type IngestErrorCode =
   | 'BAD_VALUES'
   | 'TOO_LARGE'
   | 'TOO_MANY_UNACKNOWLEDGED'
-  | 'NOT_STORED';
+  | 'NOT_STORED'
+  | 'CHANNEL_IN_USE';
