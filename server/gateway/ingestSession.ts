@@ -1,7 +1,7 @@
 import type { Hello, IngestErrorCode, IngestReply } from '../../shared-types/ingest.ts';
 import type { FrameToStore, StoredRun } from '../store/store.ts';
 import { stampOnArrival } from './arrivalStamps.ts';
-import { type DecodedFrame, decodeMessage } from './ingestFrame.ts';
+import { type Decoded, type DecodedFrame, decodeMessage } from './ingestFrame.ts';
 
 /** What may be wrong with a hello or a claim on a channel. */
 export interface Refusal {
@@ -263,6 +263,20 @@ export function createIngestSession(doors: IngestDoors, limits: IngestLimits): I
     });
   };
 
+  const handle = (decoded: Decoded, arrival: number) => {
+    if (!decoded.ok) {
+      const { code, detail, channel, seq } = decoded;
+      unusable(code, detail, channel, seq);
+      if (code === 'BAD_HELLO' && mode === 'fresh')
+        doors.close(POLICY_VIOLATION, `bad hello: ${detail}`.slice(0, 100));
+      return;
+    }
+    if (decoded.kind === 'hello') return greet(decoded.hello);
+    if (mode === 'fresh') mode = 'plain';
+    if (mode === 'plain') plain(decoded.frame, arrival);
+    else numbered(decoded.frame);
+  };
+
   let arrivalNow = 0;
   function message(data: string | Uint8Array, arrival: number): void {
     if (mode === 'ended') return;
@@ -272,18 +286,7 @@ export function createIngestSession(doors: IngestDoors, limits: IngestLimits): I
       return;
     }
     arrivalNow = arrival;
-    const decoded = decodeMessage(data, limits.largestFrame);
-    if (!decoded.ok) {
-      if (decoded.code === 'BAD_HELLO' && mode === 'fresh') {
-        refuse(decoded.code, decoded.detail, null, null);
-        return doors.close(POLICY_VIOLATION, `bad hello: ${decoded.detail}`.slice(0, 100));
-      }
-      return unusable(decoded.code, decoded.detail, decoded.channel, decoded.seq);
-    }
-    if (decoded.kind === 'hello') return greet(decoded.hello);
-    if (mode === 'fresh') mode = 'plain';
-    if (mode === 'plain') plain(decoded.frame, arrival);
-    else numbered(decoded.frame);
+    handle(decodeMessage(data, limits.largestFrame), arrival);
   }
 
   return {
