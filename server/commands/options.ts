@@ -1,5 +1,6 @@
 import type { RegimeRule, Variable, WatchRule } from '../../shared-types/watch.ts';
 import { InputError } from '../signal/inputError.ts';
+import { looksLikeTime, parseTime } from '../signal/time.ts';
 import { parseRegimeRule } from '../watch/regimeRuleText.ts';
 
 /** Rule options as `parseArgs` of node:util takes them; shared by `fit` and `rehearse`. */
@@ -58,7 +59,7 @@ export function readRuleOptions(values: OptionValues): RuleChoice | null {
     }
   }
   const choice: RuleChoice = {
-    regime: parseRegimeRule(String(values.regime)),
+    regime: readRegime(String(values.regime)),
     regimeChannel: values['regime-channel'] === undefined ? null : String(values['regime-channel']),
     leastLead: numberOption(values, 'least-lead', 0)!,
     horizon: numberOption(values, 'horizon', 0)!,
@@ -74,6 +75,14 @@ export function readRuleOptions(values: OptionValues): RuleChoice | null {
     );
   }
   return choice;
+}
+
+function readRegime(text: string): RegimeRule {
+  try {
+    return parseRegimeRule(text);
+  } catch (error) {
+    throw new InputError('BAD_RULE', (error as Error).message);
+  }
 }
 
 /** The watch rule of a choice whose threshold is known, with the defaults of the watch rule filled in. */
@@ -140,10 +149,7 @@ export function wholeOption(values: OptionValues, name: string, least: number): 
 export function timeOption(values: OptionValues, name: string, first: number): number | null {
   const text = values[name];
   if (text === undefined) return null;
-  if (typeof text === 'string' && /^\d{4}-\d\d-\d\d[Tt ]/.test(text)) {
-    const milliseconds = Date.parse(text);
-    if (Number.isFinite(milliseconds)) return milliseconds / 1000;
-  }
+  if (typeof text === 'string' && looksLikeTime(text)) return parseTime(text);
   const seconds = typeof text === 'string' && text.trim() !== '' ? Number(text) : Number.NaN;
   if (Number.isFinite(seconds)) return first + seconds;
   throw new InputError(

@@ -16,7 +16,12 @@ export interface Projection {
  * @param coordinates (channels × delays) rows × rank columns, row-major, newest sample first (see Model.coordinates)
  * @throws RangeError when the length is not channels × delays × rank
  */
-export function createProjection(coordinates: Float64Array, channels: number, delays: number, rank: number): Projection {
+export function createProjection(
+  coordinates: Float64Array,
+  channels: number,
+  delays: number,
+  rank: number,
+): Projection {
   const rows = channels * delays;
   if (coordinates.length !== rows * rank) {
     throw new RangeError(
