@@ -18,29 +18,23 @@ const MOST_WAITING_SAMPLES = 20_000_000;
 /**
  * Gathers the frames of all connections into one append a turn of the event loop.
  *
- * @param onTrouble called with a sentence when the store cannot write, with null when it can again
+ * @param onTrouble called after every write: with a sentence when the store could not, else with null
  */
 export function createRecorder(store: Store, onTrouble: (text: string | null) => void): Recorder {
   let queue: { frame: FrameToStore; settled: Settled }[] = [];
   let scheduled = false;
-  let trouble: string | null = null;
   let waitingSamples = 0;
   const handedOver = new Set<Promise<void>>();
 
-  const tell = (text: string | null) => {
-    if (text === trouble) return;
-    trouble = text;
-    onTrouble(text);
-  };
   const track = (written: Promise<void>, settled: Settled[], samples: number) => {
     const done = written.then(
       () => {
-        tell(null);
+        onTrouble(null);
         for (const each of settled) each(null);
       },
       (error: Error) => {
         const text = `what arrives is not being recorded: ${error.message}`;
-        tell(text);
+        onTrouble(text);
         for (const each of settled) each(text);
       },
     );

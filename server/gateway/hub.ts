@@ -1,0 +1,255 @@
+import { Subject } from 'rxjs';
+import type { FeedMessage } from '../../shared-types/feed.ts';
+import type { Hello, IngestErrorCode } from '../../shared-types/ingest.ts';
+import type { Model } from '../../shared-types/model.ts';
+import type { Settings } from '../../shared-types/settings.ts';
+import type { FrameToStore, Store } from '../store/store.ts';
+import { type Channels, createChannels, type Moment } from './channels.ts';
+import { createIngestSession, type IngestDoors, type IngestSession, type Refusal } from './ingestSession.ts';
+import { createJournal, type Journal } from './journal.ts';
+import { createRecorder, type Recorder } from './recorder.ts';
+import type { Surroundings } from './runningWatch.ts';
+import { createWatches, type Watches } from './watches.ts';
+
+/** New steps of a watch's variable. */
+export interface TracedSteps {
+  watch: string;
+  times: Float64Array;
+  values: Float64Array;
+}
+
+/** Everything behind the sockets. The streams carry frames and happenings, never single samples. */
+export interface Hub {
+  channels: Channels;
+  watches: Watches;
+  journal: Journal;
+  recorder: Recorder;
+  store: Store;
+  settings: Settings;
+  now(): Moment;
+  /** a producer's connection; `close` ends its socket */
+  producer(reply: IngestDoors['reply'], close: IngestDoors['close']): IngestSession;
+  frames$: Subject<FrameToStore>;
+  traces$: Subject<TracedSteps>;
+  /** to be sent to every page at once */
+  news$: Subject<FeedMessage>;
+  /** key of a channel or watch whose state changed: `channel NAME` or `watch ID` */
+  touched$: Subject<string>;
+  trouble(): string | null;
+  /** once a second */
+  tick(): void;
+  /** resolves once everything taken is settled and written */
+  close(): Promise<void>;
+}
+
+export interface HubNeeds {
+  store: Store;
+  settings: Settings;
+  now(): Moment;
+  createWatch: Surroundings['createWatch'];
+  readModel(json: string): Model;
+  warn(text: string): void;
+}
+
+/** A producer's hold on a channel. */
+interface Holder {
+  run: string | null;
+  session: IngestSession;
+  close: IngestDoors['close'];
+}
+
+const TAKEN_OVER = 4001;
+
+/** Makes the hub, loads what is stored and lets the watches catch up. */
+export async function createHub(needs: HubNeeds): Promise<Hub> {
+  const { store, settings, now } = needs;
+  const channels = createChannels();
+  const frames$ = new Subject<FrameToStore>();
+  const traces$ = new Subject<TracedSteps>();
+  const news$ = new Subject<FeedMessage>();
+  const touched$ = new Subject<string>();
+  const holders = new Map<string, Holder>();
+  const silentNow = new Map<string, boolean>();
+  let trouble: string | null = null;
+
+  const say = (message: FeedMessage) => news$.next(message);
+  const setTrouble = (text: string | null) => {
+    if (text === trouble) return;
+    trouble = text;
+    if (text !== null) needs.warn(text);
+    say({ kind: 'trouble', text });
+  };
+  const attempt = (written: Promise<unknown>) => {
+    written.catch((error: Error) => setTrouble(`what happens is not being recorded: ${error.message}`));
+  };
+  const recorder = createRecorder(store, setTrouble);
+  const newestWarning = (await store.warnings({ newest: true, most: 1 }))[0]?.id ?? 0;
+  const journal = createJournal(store, newestWarning, () => now().server, say, setTrouble);
+  channels.load(await store.channels());
+  const watches = createWatches({
+    store,
+    channels,
+    journal,
+    serverTime: () => now().server,
+    createWatch: needs.createWatch,
+    readModel: needs.readModel,
+    touch: (watch) => touched$.next(`watch ${watch}`),
+    traced: (watch, times, values) => traces$.next({ watch, times, values }),
+    flushFrames: recorder.flush,
+    failed: needs.warn,
+  });
+  await watches.start();
+
+  const take: IngestDoors['take'] = (frame, _arrival, settled) => {
+    const gaps = channels.take(frame, now());
+    if (gaps > 0) attempt(store.countFault(frame.channel, 'gap', gaps));
+    recorder.append(frame, (problem) => {
+      if (problem !== null) channels.notStored(frame.channel, frame.values.length);
+      settled(problem);
+    });
+    watches.push(frame);
+    touched$.next(`channel ${frame.channel}`);
+    frames$.next(frame);
+  };
+
+  const inUse = (channel: string, run: string | null, session: IngestSession): Refusal | null => {
+    const holder = holders.get(channel);
+    if (!holder || holder.session === session) return null;
+    // A producer that comes back before its old connection was noticed to be dead is the same producer.
+    const same = run !== null && holder.run === run;
+    if (same || channels.silent(channel, now())) return null;
+    return {
+      code: 'CHANNEL_IN_USE',
+      channel,
+      detail: `another producer is sending to "${channel}"; stop it first, or use another channel name`,
+    };
+  };
+
+  const hold = (channel: string, holder: Holder) => {
+    const before = holders.get(channel);
+    if (before?.session === holder.session) return;
+    holders.set(channel, holder);
+    channels.connect(channel, 1);
+    if (before) {
+      channels.connect(channel, -1);
+      before.session.end();
+      before.close(TAKEN_OVER, 'another connection took over');
+    }
+    touched$.next(`channel ${channel}`);
+  };
+
+  const release = (session: IngestSession) => {
+    for (const [channel, holder] of holders) {
+      if (holder.session !== session) continue;
+      holders.delete(channel);
+      channels.connect(channel, -1);
+      touched$.next(`channel ${channel}`);
+    }
+  };
+
+  const greet = async (hello: Hello, holder: Holder): ReturnType<IngestDoors['greet']> => {
+    for (const { channel } of hello.channels) {
+      const refusal = channels.has(channel) ? inUse(channel, hello.run, holder.session) : null;
+      if (refusal) return { ok: false, refusal };
+    }
+    const saving: Promise<void>[] = [];
+    for (const description of hello.channels) {
+      channels.describe(description);
+      hold(description.channel, holder);
+      saving.push(store.saveChannel(description));
+    }
+    recorder.flush();
+    await Promise.all(saving);
+    const runs = await Promise.all(
+      hello.channels.map(async ({ channel }) => [channel, await store.run(channel, hello.run)] as const),
+    );
+    return { ok: true, runs: new Map(runs) };
+  };
+
+  const claim = (channel: string, interval: number | null, holder: Holder): Refusal | null => {
+    if (!channels.has(channel)) {
+      const description = { channel, unit: '', label: '', interval, low: null, high: null };
+      channels.describe(description);
+      attempt(store.saveChannel(description));
+    } else {
+      const refusal = inUse(channel, null, holder.session);
+      if (refusal) return refusal;
+    }
+    hold(channel, holder);
+    return null;
+  };
+
+  const refused = (channel: string | null, _code: IngestErrorCode, detail: string) => {
+    if (channel === null || !channels.has(channel)) return;
+    channels.refused(channel, detail);
+    touched$.next(`channel ${channel}`);
+  };
+
+  const hole = (channel: string, from: number, to: number) => {
+    channels.hole(channel, to - from + 1);
+    attempt(store.countFault(channel, 'hole', to - from + 1));
+    const frames = from === to ? `frame ${from}` : `frames ${from} to ${to}`;
+    journal.log({ kind: 'hole', channel, watch: null, by: null, text: `the producer skipped ${frames}` });
+  };
+
+  const producer: Hub['producer'] = (reply, close) => {
+    const holder = { run: null, close } as unknown as Holder;
+    const session = createIngestSession(
+      {
+        greet(hello) {
+          holder.run = hello.run;
+          return greet(hello, holder);
+        },
+        claim: (channel, interval) => claim(channel, interval, holder),
+        newest: channels.newest,
+        take,
+        skip: recorder.skip,
+        hole,
+        refused,
+        reply,
+        close,
+      },
+      { window: settings.ingestWindow, largestFrame: settings.largestFrame },
+    );
+    holder.session = session;
+    return {
+      message: session.message,
+      end() {
+        session.end();
+        release(session);
+      },
+    };
+  };
+
+  return {
+    channels,
+    watches,
+    journal,
+    recorder,
+    store,
+    settings,
+    now,
+    producer,
+    frames$,
+    traces$,
+    news$,
+    touched$,
+    trouble: () => trouble,
+    tick() {
+      watches.tick();
+      for (const { watch } of watches.states()) touched$.next(`watch ${watch}`);
+      for (const name of channels.names()) {
+        const silent = channels.silent(name, now());
+        if (silentNow.get(name) !== silent) touched$.next(`channel ${name}`);
+        silentNow.set(name, silent);
+      }
+      attempt(watches.saveProgress());
+    },
+    async close() {
+      await recorder.idle();
+      await watches.saveProgress();
+      await journal.idle();
+      for (const subject of [frames$, traces$, news$, touched$]) subject.complete();
+    },
+  };
+}
