@@ -11,6 +11,8 @@ export interface RecordToScore extends GradingRecord {
   /** first and last grid step */
   start: number;
   end: number;
+  /** time up to which every switch is known, ≤ end: one may lie beyond it that is not confirmed yet */
+  known: number;
   /** switches and warnings from here on are counted; those before it still cover and repeat */
   scoredFrom: number;
 }
@@ -83,7 +85,7 @@ function countOutcomes(records: readonly RecordToScore[], spans: GradingSpans) {
     }
     record.warnings.forEach((a, index) => {
       if (stepOf(a, record, spans.interval) < from) return;
-      const { outcome } = gradeWarning(record, index, spans, record.end);
+      const { outcome } = gradeWarning(record, index, spans, record.known);
       issued.total++;
       issued[outcome satisfies WarningOutcome]++;
     });
@@ -114,6 +116,7 @@ export function toStretch(record: RecordToScore, spans: GradingSpans): Steps {
     leastLead,
     horizon,
     count,
+    known: stepOf(record.known, record, interval),
     scoredFrom: Math.max(0, stepOf(record.scoredFrom, record, interval)),
     watchedBefore,
     switches: stepsOf(record.switches, record, interval),

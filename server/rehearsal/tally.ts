@@ -5,8 +5,10 @@
 export interface Steps {
   leastLead: number;
   horizon: number;
-  /** steps 0 … count − 1 are known */
+  /** steps 0 … count − 1 */
   count: number;
+  /** the last step up to which every switch is known, ≤ count − 1 */
+  known: number;
   /** switches and warnings from this step on are counted; those before it still cover and repeat */
   scoredFrom: number;
   /** length count + 1: how many of the steps before each had a full window */
@@ -96,7 +98,7 @@ function tallyWarnings(
   cover: Int32Array,
   { warnings: found }: Tally,
 ): void {
-  const { switches, leastLead, horizon, scoredFrom, count } = steps;
+  const { switches, leastLead, horizon, scoredFrom, known } = steps;
   let next = 0;
   for (let w = 0; w < size; w++) {
     const a = warnings[w]!;
@@ -114,7 +116,7 @@ function tallyWarnings(
     else if (late) found.late++;
     else if (warned) found.repeat++;
     else if (meetsUnseen(steps, a + leastLead, a + horizon)) found.unseen++;
-    else if (count - 1 < a + horizon) found.open++;
+    else if (known < a + horizon) found.open++;
     else found.false++;
   }
 }

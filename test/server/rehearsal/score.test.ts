@@ -21,6 +21,7 @@ function toRecord(given: ObviousCase): RecordToScore {
   return {
     start: 0,
     end: (given.watched.length - 1) * INTERVAL,
+    known: (given.watched.length - 1) * INTERVAL,
     scoredFrom: given.scoredFrom * INTERVAL,
     switches: given.switches.map((step) => step * INTERVAL),
     warnings: given.warnings.map((step) => step * INTERVAL),
@@ -175,7 +176,7 @@ describe('scoring', () => {
 
   it('never lets a warning of one recording cover a switch of the next', () => {
     const first = toRecord({ ...base, warnings: [38] });
-    const second = { ...toRecord({ ...base, switches: [1, 20] }), start: 20, end: 39.5 };
+    const second = { ...toRecord({ ...base, switches: [1, 20] }), start: 20, end: 39.5, known: 39.5 };
     second.switches = second.switches.map((e) => e + 20);
     second.sight = [{ from: 20, to: 39.5 }];
     const found = scoreRecords([first, second], spansOf(base), { uniform: null });
