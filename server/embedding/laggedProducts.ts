@@ -32,9 +32,9 @@ export function laggedProducts(runs: Runs, delays: number): DoubleDoubles {
     if (length < delays) continue;
     for (let newest = delays - 1; newest < length; newest += BLOCK) {
       const count = Math.min(BLOCK, length - newest);
-      run.forEach((values, c) =>
-        splitInto(values, newest - delays + 1, count + delays - 1, runs, c, lines[c]!),
-      );
+      for (let c = 0; c < channels; c++) {
+        splitInto(run[c]!, newest - delays + 1, count + delays - 1, runs, c, lines[c]!);
+      }
       addFirstRows(gram, lines, delays, count);
     }
     addEnds(gram, run, runs, delays);
