@@ -1,5 +1,6 @@
 import type { RegimeRule } from '../../shared-types/watch.ts';
 import { createGrid, createGridBlock, pushGrid } from '../signal/grid.ts';
+import { InputError } from '../signal/inputError.ts';
 import type { Stretch } from '../watch/grading.ts';
 import { createJointBlock, createJointGrid, pushJointGrid } from '../watch/jointGrid.ts';
 import {
@@ -51,7 +52,7 @@ export interface GriddedRecording {
 /**
  * Puts a recording on the grid exactly as a live watch does, and finds its switches.
  *
- * @throws RangeError when a channel is not in the recording or has no samples
+ * @throws InputError when a channel is not in the recording or has no samples
  */
 export function gridRecording(
   series: readonly RecordedSeries[],
@@ -61,7 +62,8 @@ export function gridRecording(
   const watched = channels.map((channel) => seriesOf(series, channel));
   const runs = jointRuns(watched, settings);
   if (runs.length === 0) {
-    throw new RangeError(
+    throw new InputError(
+      'NO_COMMON_TIME',
       `the channels ${channels.join(', ')} have no time in common; record them together, or watch one of them`,
     );
   }
@@ -80,12 +82,13 @@ export function gridRecording(
 
 /** The recorded channel of this name.
  *
- * @throws RangeError when the recording does not have it or it has no samples
+ * @throws InputError when the recording does not have it or it has no samples
  */
 export function seriesOf(series: readonly RecordedSeries[], channel: string): RecordedSeries {
   const found = series.find((one) => one.channel === channel);
   if (found === undefined || found.times.length === 0) {
-    throw new RangeError(
+    throw new InputError(
+      'NO_SUCH_CHANNEL',
       `the recording has no channel ${channel}, it has ${series.map((one) => one.channel).join(', ')}; name one of these`,
     );
   }

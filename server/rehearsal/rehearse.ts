@@ -1,5 +1,6 @@
 import type { Score } from '../../shared-types/score.ts';
 import type { SwitchOutcome, WarningOutcome } from '../../shared-types/warning.ts';
+import { InputError } from '../signal/inputError.ts';
 import { type GradingSpans, gradeSwitch, gradeWarning, type Stretch } from '../watch/grading.ts';
 import type { ConfirmedSwitch } from '../watch/regimeRule.ts';
 import type { Happening, Steps, WatchSettings } from '../watch/types.ts';
@@ -63,7 +64,7 @@ export interface Rehearsal {
  * nothing of the one before.
  *
  * @param recordings the channels of each, by the names the watch asks for
- * @throws RangeError when the settings have no watch rule or no regime rule, or a channel is missing
+ * @throws InputError when the settings have no watch rule or no regime rule, or a channel is missing
  */
 export function rehearse(
   settings: WatchSettings,
@@ -72,7 +73,8 @@ export function rehearse(
 ): Rehearsal {
   const { rule, model } = settings;
   if (rule === null || settings.regime === null) {
-    throw new RangeError(
+    throw new InputError(
+      'NO_RULE',
       `the model ${model.name} has no ${rule === null ? 'watch rule' : 'regime rule'}, so nothing can be scored; ` +
         'give --regime, --least-lead, --horizon and --threshold, or fit it with them',
     );

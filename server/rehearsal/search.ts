@@ -2,6 +2,7 @@ import type { Model } from '../../shared-types/model.ts';
 import type { Score } from '../../shared-types/score.ts';
 import type { RegimeRule, WatchRule } from '../../shared-types/watch.ts';
 import { fitModel } from '../model/fit.ts';
+import { InputError } from '../signal/inputError.ts';
 import type { GradingSpans, Stretch } from '../watch/grading.ts';
 import { steppedRule, toSteps } from '../watch/watchRule.ts';
 import { type GriddedRecording, gridRecording } from './gridded.ts';
@@ -97,7 +98,7 @@ export interface Found {
  * Chooses window, rank and threshold: each pair is fitted on the tuning part, its forcing swept there, the best by
  * the rule of choice taken and scored on the rest.
  *
- * @throws RangeError when no switch on the tuning part could have been warned of
+ * @throws InputError when no switch on the tuning part could have been warned of
  */
 export function chooseSettings(task: SearchTask): Found {
   const parted = partRecordings(task);
@@ -239,7 +240,8 @@ function bestPair(pairs: readonly TriedPair[], ceiling: Ceiling | null): TriedPa
     ceiling,
   );
   if (best === null) {
-    throw new RangeError(
+    throw new InputError(
+      'NOTHING_TO_WARN_OF',
       'no switch on the tuning part could have been warned of; give longer recordings, another rule for the switch, or a longer horizon',
     );
   }
