@@ -2,8 +2,8 @@ import { createProjection, projectInto } from '../embedding/projection.ts';
 import { lineInto } from '../embedding/runs.ts';
 import { STENCIL } from './derivative.ts';
 
-/** Windows projected at a time. */
-const BLOCK = 2048;
+/** Windows projected at a time, at most. */
+export const BLOCK = 2048;
 
 /** What a walk over a recording needs of a model. */
 export interface Coordinates {

@@ -1,6 +1,6 @@
 import { EigenvalueDecomposition, Matrix } from 'ml-matrix';
 import type { Diagnostics, ValidityLimits } from '../../shared-types/model.ts';
-import { type Coordinates, walkCoordinates } from './coordinateBlocks.ts';
+import { BLOCK, type Coordinates, walkCoordinates } from './coordinateBlocks.ts';
 import { freeRunCorrelation } from './freeRun.ts';
 import { addSums, createNormalSums, type NormalSums, rSquared, solveLeastSquares } from './leastSquares.ts';
 import { regressionSums } from './regression.ts';
@@ -95,10 +95,12 @@ export function measureSpread(
   const stride = Math.ceil(windows / MOST_WINDOWS);
   const spe = new Float64Array(Math.ceil(windows / stride));
   const t2 = new Float64Array(spe.length);
-  const one = [new Float64Array(1), new Float64Array(1)] as const;
+  const blockSpe = new Float64Array(BLOCK);
+  const blockT2 = new Float64Array(BLOCK);
   const powers = [0, 0, 0, 0];
   let beyond = 0;
   walkCoordinates(runs, of, (block) => {
+    validityInto(validity, block.lines, delays - 1, block.count, block.values, blockSpe, blockT2);
     for (let i = block.fresh; i < block.count; i++) {
       const v = block.values[i * rank + rank - 1]!;
       const square = v * v;
@@ -109,9 +111,8 @@ export function measureSpread(
       if (square > 4) beyond++;
       const ordinal = block.ordinal + i;
       if (ordinal % stride !== 0) continue;
-      validityInto(validity, block.lines, delays - 1 + i, 1, block.values.subarray(i * rank), one[0], one[1]);
-      spe[ordinal / stride] = one[0][0]!;
-      t2[ordinal / stride] = one[1][0]!;
+      spe[ordinal / stride] = blockSpe[i]!;
+      t2[ordinal / stride] = blockT2[i]!;
     }
   });
   const [m1, m2, m3, m4] = powers.map((power) => power / windows) as [number, number, number, number];
