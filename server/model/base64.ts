@@ -3,7 +3,7 @@ const LETTERS = 'ABCDEFGHIJKLMNOPQRSTUVWXYZabcdefghijklmnopqrstuvwxyz0123456789+
 /** Base64 (RFC 4648) of float64 numbers, little-endian. */
 export function encodeFloats(values: Float64Array): string {
   const view = new DataView(new ArrayBuffer(8 * values.length));
-  values.forEach((value, i) => view.setFloat64(8 * i, value, true));
+  for (let i = 0; i < values.length; i++) view.setFloat64(8 * i, values[i]!, true);
   const length = view.byteLength;
   const parts: string[] = [];
   for (let i = 0; i < length; i += 3) {
