@@ -58,12 +58,34 @@ export interface WatchProgress {
 
 /** A recording cut out of what a channel has stored. */
 export interface StoredRecording {
-  /** `CHANNEL/N`, N from 1 in time order */
+  /** `CHANNEL/N`, N from 1 in order of arrival */
   name: string;
   channel: string;
   from: number;
   to: number;
   samples: number;
+  /** of its first sample: the recording is `samples` from there, also where times repeat (elapsed time, started again) */
+  ordinal: number;
+}
+
+/** What may also be read while a server writes, by another process (`openStoreReader`). */
+export interface StoreReader {
+  channels(): Promise<StoredChannel[]>;
+  /**
+   * samples from `ordinal` on, at most `most` of them, in order of arrival; empty when there are none. Times ascend
+   * within a block: it ends early where time steps back, so only an empty one is the end.
+   */
+  samplesFrom(channel: string, ordinal: number, most: number): Promise<StoredBlock>;
+  /** samples with from ≤ t ≤ to, oldest first; where times were recorded twice, what arrived last */
+  samplesBetween(channel: string, from: number, to: number): Promise<StoredBlock>;
+  /** drawing data of a channel or of a watch's trace from the min/max pyramid: about `columns` columns over [from, to] */
+  signalColumns(channel: string, from: number, to: number, columns: number): Promise<Columns>;
+  traceColumns(watch: string, from: number, to: number, columns: number): Promise<Columns>;
+  /** what a channel has stored, cut where nothing came for `gapSeconds` */
+  recordings(gapSeconds: number): Promise<StoredRecording[]>;
+  model(name: string): Promise<string | null>;
+  models(): Promise<{ name: string; json: string }[]>;
+  close(): Promise<void>;
 }
 
 /**
@@ -71,11 +93,14 @@ export interface StoredRecording {
  * (group commit), in the order of the calls. The implementation runs in a worker thread (`storeThread.ts`) or in
  * line (`openStore`); callers cannot tell.
  *
- * Errors: a rejected promise carries `code: 'FULL' | 'DAMAGED' | 'CLOSED' | 'FAILED'` and a sentence.
+ * Errors: a rejected promise carries `code: 'FULL' | 'DAMAGED' | 'CLOSED' | 'FAILED'` and a sentence. FULL and DAMAGED roll
+ * back everything since the last commit and reject all calls made before the caller could know: ask `run` again for
+ * where each run stands before going on. FAILED concerns that call alone.
  */
-export interface Store {
+export interface Store extends StoreReader {
+  /** what happened while it was opened that a person should know, in sentences, for the log; empty when nothing did */
+  readonly notices: readonly string[];
   saveChannel(channel: ChannelDescription): Promise<void>;
-  channels(): Promise<StoredChannel[]>;
 
   appendFrames(frames: FrameToStore[]): Promise<void>;
   /** a skipped frame number or a gap, counted on the channel */
@@ -84,19 +109,7 @@ export interface Store {
   /** frames whose seq was given up (refused), so that a restart does not wait for them */
   skipFrame(channel: string, run: string, seq: number, digest: number): Promise<void>;
 
-  /** samples from `ordinal` on, at most `most` of them, oldest first; empty when there are none */
-  samplesFrom(channel: string, ordinal: number, most: number): Promise<StoredBlock>;
-  /** samples with from ≤ t ≤ to, oldest first */
-  samplesBetween(channel: string, from: number, to: number): Promise<StoredBlock>;
-  /** drawing data of a channel or of a watch's trace from the min/max pyramid: about `columns` columns over [from, to] */
-  signalColumns(channel: string, from: number, to: number, columns: number): Promise<Columns>;
-  traceColumns(watch: string, from: number, to: number, columns: number): Promise<Columns>;
-  /** what a channel has stored, cut where nothing came for `gapSeconds` */
-  recordings(gapSeconds: number): Promise<StoredRecording[]>;
-
   saveModel(name: string, json: string): Promise<void>;
-  model(name: string): Promise<string | null>;
-  models(): Promise<{ name: string; json: string }[]>;
 
   saveWatch(watch: StoredWatch): Promise<void>;
   watches(): Promise<StoredWatch[]>;
@@ -108,10 +121,22 @@ export interface Store {
    */
   saveWarning(warning: Warning): Promise<number>;
   /** oldest first; `after`: only ids above it; `newest`: the last `most` instead of the first */
-  warnings(query: { channel?: string; watch?: string; after?: number; most?: number; newest?: boolean; since?: number }): Promise<Warning[]>;
+  warnings(query: {
+    channel?: string;
+    watch?: string;
+    after?: number;
+    most?: number;
+    newest?: boolean;
+    since?: number;
+  }): Promise<Warning[]>;
   /** as warnings: same watch and same `at` is the same switch */
   saveSwitch(event: SwitchEvent): Promise<number>;
-  switches(query: { channel?: string; watch?: string; since?: number; most?: number }): Promise<SwitchEvent[]>;
+  switches(query: {
+    channel?: string;
+    watch?: string;
+    since?: number;
+    most?: number;
+  }): Promise<SwitchEvent[]>;
 
   log(entry: Omit<LogEntry, 'id'>): Promise<number>;
   logEntries(query: { after?: number; most?: number; newest?: boolean }): Promise<LogEntry[]>;

@@ -1,0 +1,93 @@
+import { existsSync, mkdirSync, renameSync, statSync } from 'node:fs';
+import { join } from 'node:path';
+import Database from 'better-sqlite3';
+import { migrate, SCHEMA_VERSION, schemaVersion } from './schema.ts';
+import { isDamage, StoreError } from './storeError.ts';
+
+/** Name of the database in the data folder. */
+export const DATABASE_FILE = 'foreshift.db';
+
+/** Up to this size a database is read through when it is opened, so that damage anywhere shows at once. */
+const READ_THROUGH_BYTES = 32 * 1024 * 1024;
+
+/**
+ * Opens the folder's database for writing; makes folder and database where there are none. A damaged one is set
+ * aside under a name with the time, a new one begun, and a sentence pushed to `notices`.
+ *
+ * @throws StoreError NEWER where the database was written by a newer program
+ */
+export function openDatabase(dataFolder: string, notices: string[]): Database.Database {
+  mkdirSync(dataFolder, { recursive: true });
+  const file = join(dataFolder, DATABASE_FILE);
+  try {
+    return open(file);
+  } catch (fault) {
+    if (!isDamage(fault)) throw fault;
+    const aside = setAside(file);
+    notices.push(
+      `the database ${file} was damaged (${(fault as Error).message}); it was kept as ${aside} and a new one begun; ` +
+        'channels, models and watches have to be set up again, or a copy of the folder put back',
+    );
+    return open(file);
+  }
+}
+
+/**
+ * Opens the folder's database for reading only, also while a server writes to it.
+ *
+ * @throws StoreError NO_STORE where there is none, NEWER where it was written by a newer program
+ */
+export function openDatabaseReader(dataFolder: string): Database.Database {
+  const file = join(dataFolder, DATABASE_FILE);
+  if (!existsSync(file))
+    throw new StoreError(
+      'NO_STORE',
+      `there is no ${DATABASE_FILE} in ${dataFolder}; expected the data folder of a server that has recorded; ` +
+        'name it with --data DIR or FORESHIFT_DATA',
+    );
+  const database = new Database(file, { readonly: true });
+  try {
+    refuseOther(database, file);
+  } catch (fault) {
+    database.close();
+    throw fault;
+  }
+  return database;
+}
+
+function open(file: string): Database.Database {
+  const database = new Database(file);
+  try {
+    refuseOther(database, file);
+    database.pragma('journal_mode = WAL');
+    database.pragma('synchronous = FULL');
+    migrate(database);
+    if (statSync(file).size <= READ_THROUGH_BYTES) refuseDamaged(database);
+  } catch (fault) {
+    database.close();
+    throw fault;
+  }
+  return database;
+}
+
+function refuseOther(database: Database.Database, file: string): void {
+  const version = schemaVersion(database);
+  if (version > SCHEMA_VERSION)
+    throw new StoreError(
+      'NEWER',
+      `${file} has version ${version}, this program reads up to ${SCHEMA_VERSION}; ` +
+        'use the newer Foreshift that wrote it, or another data folder with --data DIR',
+    );
+}
+
+function refuseDamaged(database: Database.Database): void {
+  const found = database.pragma('quick_check(1)', { simple: true });
+  if (found !== 'ok') throw Object.assign(new Error(String(found)), { code: 'SQLITE_CORRUPT' });
+}
+
+function setAside(file: string): string {
+  const stamp = new Date().toISOString().replace(/[:.]/g, '-');
+  const aside = file.replace(/\.db$/, `.damaged-${stamp}.db`);
+  for (const end of ['', '-wal', '-shm']) if (existsSync(file + end)) renameSync(file + end, aside + end);
+  return aside;
+}
