@@ -34,7 +34,15 @@ export interface GridBlock {
 }
 
 export function createGrid(interval: number, gapIntervals: number, bridging: Bridging = 'linear'): GridState {
-  return { interval, gapIntervals, bridging, anchor: Number.NaN, step: 0, lastTime: Number.NaN, lastValue: Number.NaN };
+  return {
+    interval,
+    gapIntervals,
+    bridging,
+    anchor: Number.NaN,
+    step: 0,
+    lastTime: Number.NaN,
+    lastValue: Number.NaN,
+  };
 }
 
 export function createGridBlock(capacity = 64): GridBlock {
@@ -165,7 +173,8 @@ export function cutRuns(block: GridBlock): GridRun[] {
  * @throws RangeError when there are fewer than two times
  */
 export function usualInterval(times: Float64Array): number {
-  if (times.length < 2) throw new RangeError(`usualInterval: ${times.length} samples, needs at least 2; record for longer`);
+  if (times.length < 2)
+    throw new RangeError(`usualInterval: ${times.length} samples, needs at least 2; record for longer`);
   const count = Math.min(times.length - 1, 10_000);
   const steps = new Float64Array(count);
   for (let i = 0; i < count; i++) steps[i] = times[i + 1]! - times[i]!;

@@ -46,7 +46,8 @@ export interface GradedSwitch {
 }
 
 /** Whole grid steps from a to e. */
-export const stepsBetween = (a: number, e: number, interval: number): number => Math.round((e - a) / interval);
+export const stepsBetween = (a: number, e: number, interval: number): number =>
+  Math.round((e - a) / interval);
 
 /** Index of the first entry of ascending `times` that is ≥ `time`; the length when there is none. */
 export function lowerBound(times: readonly number[], time: number): number {
@@ -112,7 +113,12 @@ export function couldSee(sight: readonly Stretch[], e: number, spans: GradingSpa
  *
  * @param end time up to which every switch is known (seconds)
  */
-export function gradeWarning(record: GradingRecord, index: number, spans: GradingSpans, end: number): GradedWarning {
+export function gradeWarning(
+  record: GradingRecord,
+  index: number,
+  spans: GradingSpans,
+  end: number,
+): GradedWarning {
   const { warnings, switches, unseen } = record;
   const { interval, leastLead, horizon } = spans;
   const a = warnings[index]!;
@@ -131,7 +137,8 @@ export function gradeWarning(record: GradingRecord, index: number, spans: Gradin
   if (late !== null) return { outcome: 'late', switchAt: late, lead: late - a };
   if (repeated !== null) return { outcome: 'repeat', switchAt: repeated, lead: repeated - a };
   const none = { switchAt: null, lead: null };
-  if (overlaps(unseen, a + leastLead * interval, a + horizon * interval)) return { outcome: 'unseen', ...none };
+  if (overlaps(unseen, a + leastLead * interval, a + horizon * interval))
+    return { outcome: 'unseen', ...none };
   return { outcome: stepsBetween(a, end, interval) < horizon ? 'open' : 'false', ...none };
 }
 

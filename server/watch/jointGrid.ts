@@ -1,4 +1,11 @@
-import { createGrid, createGridBlock, type GridBlock, type GridState, ON_GRID, pushGrid } from '../signal/grid.ts';
+import {
+  createGrid,
+  createGridBlock,
+  type GridBlock,
+  type GridState,
+  ON_GRID,
+  pushGrid,
+} from '../signal/grid.ts';
 
 /**
  * Several channels on one grid: the first channel's. The others are bridged onto its grid times, by the same rules.
@@ -185,7 +192,9 @@ function bridge(
     }
     return Number.NaN;
   }
-  found[f] = follower.lastValue + ((grid - follower.lastTime) / (time - follower.lastTime)) * (value - follower.lastValue);
+  found[f] =
+    follower.lastValue +
+    ((grid - follower.lastTime) / (time - follower.lastTime)) * (value - follower.lastValue);
   return time;
 }
 

@@ -51,7 +51,8 @@ export interface SteppedRegime {
 export function steppedRegime(rule: RegimeRule, interval: number): SteppedRegime {
   const stepped: SteppedRegime = { rule, interval, levels: [], below: [], beyond: [], window: 0 };
   if (rule.kind === 'sides') {
-    if (!(rule.low < rule.high)) throw new RangeError(`sides:${rule.low},${rule.high} — LOW must be below HIGH; swap them`);
+    if (!(rule.low < rule.high))
+      throw new RangeError(`sides:${rule.low},${rule.high} — LOW must be below HIGH; swap them`);
     stepped.levels = [(rule.low + rule.high) / 2];
     stepped.below = [rule.low];
     stepped.beyond = [rule.high];
@@ -116,26 +117,39 @@ export function breakRegime(state: RegimeState): void {
  * @param value channel value, its own unit
  * @returns the switch that this step confirms, or null
  */
-export function stepRegime(state: RegimeState, regime: SteppedRegime, time: number, value: number): ConfirmedSwitch | null {
+export function stepRegime(
+  state: RegimeState,
+  regime: SteppedRegime,
+  time: number,
+  value: number,
+): ConfirmedSwitch | null {
   state.time = time;
   const { rule } = regime;
   let found: ConfirmedSwitch | null;
   if (rule.kind === 'sides' || rule.kind === 'levels') found = stepBands(state, regime, time, value);
-  else if (rule.kind === 'excursion') found = stepExcursion(state, time, value, rule.level, rule.rearm, rule.gap);
-  else if (rule.kind === 'dip') found = stepExcursion(state, time, -value, -rule.level, -rule.rearm, rule.gap);
+  else if (rule.kind === 'excursion')
+    found = stepExcursion(state, time, value, rule.level, rule.rearm, rule.gap);
+  else if (rule.kind === 'dip')
+    found = stepExcursion(state, time, -value, -rule.level, -rule.rearm, rule.gap);
   else if (rule.kind === 'burst') found = stepBurst(state, regime, time, value, rule.level, rule.rearm);
   else found = stepMarks(state, time, value);
   state.previous = value;
-  if (found === null || rule.to === undefined || rule.kind !== 'sides' && rule.kind !== 'levels') return found;
-  return (found.to > found.from) === (rule.to === 'up') ? found : null;
+  if (found === null || rule.to === undefined || (rule.kind !== 'sides' && rule.kind !== 'levels'))
+    return found;
+  return found.to > found.from === (rule.to === 'up') ? found : null;
 }
 
 /** Two or more bands: the last crossing of the parting level next to the band that was reached. */
-function stepBands(state: RegimeState, regime: SteppedRegime, time: number, value: number): ConfirmedSwitch | null {
+function stepBands(
+  state: RegimeState,
+  regime: SteppedRegime,
+  time: number,
+  value: number,
+): ConfirmedSwitch | null {
   const { levels, below, beyond } = regime;
   for (let i = 0; i < levels.length; i++) {
     const level = levels[i]!;
-    if ((value >= level) !== (state.previous >= level) && !Number.isNaN(state.previous)) state.crossed[i] = time;
+    if (value >= level !== state.previous >= level && !Number.isNaN(state.previous)) state.crossed[i] = time;
   }
   const from = state.regime;
   if (from === -1) {

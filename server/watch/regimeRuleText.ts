@@ -20,7 +20,9 @@ export function parseRegimeRule(text: string): RegimeRule {
   const colon = text.indexOf(':');
   const kind = text.slice(0, Math.max(0, colon)).trim() as RegimeRule['kind'];
   if (!(kind in FORMS)) {
-    throw new RangeError(`"${text}" is no rule for a switch; write one of ${Object.values(FORMS).join(', ')}`);
+    throw new RangeError(
+      `"${text}" is no rule for a switch; write one of ${Object.values(FORMS).join(', ')}`,
+    );
   }
   const { words, to, deadband } = splitArguments(text.slice(colon + 1), kind, text);
   const rule = build(kind, words, deadband, text);
@@ -40,12 +42,20 @@ function splitArguments(tail: string, kind: RegimeRule['kind'], text: string) {
       if (trimmed !== '') words.push(trimmed);
     } else if (key === 'to' && (setting === 'up' || setting === 'down')) to = setting;
     else if (key === 'deadband' && kind === 'levels') deadband = setting;
-    else throw new RangeError(`"${trimmed}" in "${text}" is not understood; ${FORMS[kind]}, then to=up or to=down`);
+    else
+      throw new RangeError(
+        `"${trimmed}" in "${text}" is not understood; ${FORMS[kind]}, then to=up or to=down`,
+      );
   }
   return { words, to, deadband };
 }
 
-function build(kind: RegimeRule['kind'], words: string[], deadband: string | undefined, text: string): RegimeRule {
+function build(
+  kind: RegimeRule['kind'],
+  words: string[],
+  deadband: string | undefined,
+  text: string,
+): RegimeRule {
   if (kind === 'marks') {
     if (words.length !== 1) throw new RangeError(`"${text}" must name one channel: ${FORMS.marks}`);
     return { kind, channel: words[0]! };
@@ -67,14 +77,17 @@ function build(kind: RegimeRule['kind'], words: string[], deadband: string | und
 
 function toNumber(word: string, text: string): number {
   const number = Number(word);
-  if (word === '' || !Number.isFinite(number)) throw new RangeError(`"${word}" in "${text}" is not a number; use digits and a point`);
+  if (word === '' || !Number.isFinite(number))
+    throw new RangeError(`"${word}" in "${text}" is not a number; use digits and a point`);
   return number;
 }
 
 function checkDirection(kind: RegimeRule['kind'], to: 'up' | 'down', text: string): void {
   if (kind === 'sides' || kind === 'levels') return;
   if ((kind === 'dip') === (to === 'down')) return;
-  throw new RangeError(`"${text}": ${kind} knows only to=${kind === 'dip' ? 'down' : 'up'}; leave to=${to} out`);
+  throw new RangeError(
+    `"${text}": ${kind} knows only to=${kind === 'dip' ? 'down' : 'up'}; leave to=${to} out`,
+  );
 }
 
 /** The text form of a regime rule; `parseRegimeRule` reads it back. */

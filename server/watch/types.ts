@@ -1,6 +1,6 @@
 import type { Model } from '../../shared-types/model.ts';
-import type { Likeness, RegimeRule, Sight, WatchRule } from '../../shared-types/watch.ts';
 import type { SwitchOutcome, WarningOutcome } from '../../shared-types/warning.ts';
+import type { Likeness, RegimeRule, Sight, WatchRule } from '../../shared-types/watch.ts';
 
 /** Samples of one channel in time order. `times` null: sample i is at t0 + i·dt. NaN in `values`: no sample there. */
 export interface Frame {
@@ -25,11 +25,28 @@ export interface WatchSettings {
 /** What a watch has to say about a push. Times are channel time. */
 export type Happening =
   /** `number` counts this watch's warnings from 0; (at + from, at + to] in seconds is its span */
-  | { kind: 'warning'; number: number; at: number; from: number; to: number; value: number; threshold: number }
+  | {
+      kind: 'warning';
+      number: number;
+      at: number;
+      from: number;
+      to: number;
+      value: number;
+      threshold: number;
+    }
   /** a warning's outcome is settled; `switchAt` and `lead` for true, repeat and late ones */
   | { kind: 'graded'; at: number; outcome: WarningOutcome; switchAt: number | null; lead: number | null }
   /** a switch is confirmed; `warningAt` and `lead` name the first warning that covers it */
-  | { kind: 'switch'; at: number; confirmedAt: number; from: number; to: number; outcome: SwitchOutcome; warningAt: number | null; lead: number | null }
+  | {
+      kind: 'switch';
+      at: number;
+      confirmedAt: number;
+      from: number;
+      to: number;
+      outcome: SwitchOutcome;
+      warningAt: number | null;
+      lead: number | null;
+    }
   /** the delay line was emptied by a gap: no sample from `from` to `to` */
   | { kind: 'gap'; channel: string; from: number; to: number }
   | { kind: 'likeness'; at: number; likeness: Likeness };
@@ -60,12 +77,10 @@ export interface Watch {
   sight(): Sight;
   likeness(): Likeness;
   regimeNow(): number | null;
-  /** steps with a full window so far, in seconds */
+  /** seconds with a full window so far, and those of them inside the span of some warning */
   watchedSeconds(): number;
+  coveredSeconds(): number;
   /** names of the channels it wants frames of */
   wants(): string[];
   snapshot(): WatchSnapshot;
 }
-
-/** Made by `createWatch(settings)` or `restoreWatch(settings, snapshot)` in watch.ts. */
-export type CreateWatch = (settings: WatchSettings, snapshot?: WatchSnapshot) => Watch;

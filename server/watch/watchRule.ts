@@ -96,7 +96,12 @@ export function breakWatchRule(state: WatchRuleState): void {
  * Armed, the variable above its threshold for on-delay + 1 consecutive steps: a rise, which disarms. It is a warning
  * unless hold-off has not passed since the last one; then it is passed over. Armed again once below re-arm.
  */
-export function stepWatchRule(state: WatchRuleState, rule: SteppedRule, time: number, value: number): boolean {
+export function stepWatchRule(
+  state: WatchRuleState,
+  rule: SteppedRule,
+  time: number,
+  value: number,
+): boolean {
   const s = rule.sign * value;
   if (!state.armed) {
     if (s < rule.rearm) {
