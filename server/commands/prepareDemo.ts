@@ -1,0 +1,142 @@
+import { createHash } from 'node:crypto';
+import { mkdir, readFile, writeFile } from 'node:fs/promises';
+import { join } from 'node:path';
+import type { Model } from '../../shared-types/model.ts';
+import type { NewWatch } from '../../shared-types/watch.ts';
+import { modelFromJson, modelToJson } from '../model/modelFile.ts';
+import type { RecordedSeries } from '../rehearsal/playback.ts';
+import { chooseSettings } from '../rehearsal/search.ts';
+import { createRandom } from '../rigs/random.ts';
+import { createStand, STAND_INTERVAL, STAND_LOOPS } from '../rigs/stand.ts';
+
+/** Hours of training recording: the first half for choosing, the second judged. */
+const TRAINING_HOURS = 6;
+const TUNE_PART = 0.5;
+
+/** A person must be able to act: ten seconds at least. */
+const LEAST_LEAD = 10;
+const HORIZON = 20;
+
+/** The reaction, in seconds, up to which a person is asked to acknowledge: well below the least lead. */
+const REACTION = 5;
+
+/** Windows (in samples) and ranks that are tried: about an orbit's third to its whole. */
+const PAIRS = [14, 17, 20, 23, 26, 30, 34].flatMap((delays) => [2, 3].map((rank) => ({ delays, rank })));
+
+/** A switch is a change of sides by a tenth of the amplitude, about 0.3 K. */
+const SIDE_KELVIN = 0.3;
+
+/** What the watch command needs to start the demo's watches. */
+export interface PreparedDemo {
+  /** one a loop, to be saved under `name` */
+  models: { name: string; json: string; model: Model; file: string }[];
+  watches: NewWatch[];
+  /** the training recordings, to look at and to fit again */
+  recordings: string[];
+}
+
+/**
+ * Makes what the demo needs in `DATA/demo`: a training recording of each loop (CSV, simulated at once), settings
+ * chosen on its first half, and a model with its rules and the score of the second half. What an earlier start made is
+ * used again.
+ *
+ * @param program name and version, for the models' provenance
+ */
+export async function prepareDemo(dataFolder: string, program: string): Promise<PreparedDemo> {
+  const folder = join(dataFolder, 'demo');
+  await mkdir(folder, { recursive: true });
+  const prepared: PreparedDemo = { models: [], watches: [], recordings: [] };
+  for (const { channel } of STAND_LOOPS) {
+    const recording = join(folder, `${channel}.csv`);
+    const file = join(folder, `${channel}.model.json`);
+    const json = (await earlier(file, recording)) ?? (await makeModel(channel, recording, file, program));
+    const name = `demo ${channel}`;
+    prepared.models.push({ name, json, model: modelFromJson(json), file });
+    prepared.watches.push({ name: watchName(channel), model: name, channels: [channel], reaction: REACTION });
+    prepared.recordings.push(recording);
+  }
+  return prepared;
+}
+
+const watchName = (channel: string): string =>
+  channel.replace('loop-', 'Loop ').replace(/.$/, (last) => last.toUpperCase());
+
+/** The model of an earlier start, null when there is none that can be used. */
+async function earlier(file: string, recording: string): Promise<string | null> {
+  try {
+    await readFile(recording);
+    const json = await readFile(file, 'utf8');
+    modelFromJson(json);
+    return json;
+  } catch {
+    return null;
+  }
+}
+
+async function makeModel(channel: string, recording: string, file: string, program: string): Promise<string> {
+  const series = trainingSeries(channel);
+  const text = csvOf(series);
+  await writeFile(recording, text);
+  const model = fitDemo(series);
+  const { times } = series;
+  const fittedTo = times[0]! + TUNE_PART * (times.at(-1)! - times[0]!);
+  model.provenance = {
+    program,
+    fittedAt: new Date().toISOString(),
+    recordings: [
+      {
+        name: recording,
+        sha256: createHash('sha256').update(text).digest('hex'),
+        from: times[0]!,
+        to: fittedTo,
+        samples: times.filter((time) => time <= fittedTo).length,
+      },
+    ],
+  };
+  const json = modelToJson(model);
+  await writeFile(file, json);
+  return json;
+}
+
+/** A simulated recording as its file will hold it: milliseconds and tenths of a millikelvin. */
+export function trainingSeries(channel: string, hours = TRAINING_HOURS): RecordedSeries {
+  const designs = STAND_LOOPS.filter((design) => design.channel === channel);
+  const [frame] = createStand('training', designs).advance(3600 * hours);
+  const rounded = (values: Float64Array, digits: number) =>
+    values.map((value) => Number(value.toFixed(digits)));
+  return { channel, times: rounded(frame!.times, 3), values: rounded(frame!.values, 4) };
+}
+
+/** Chooses settings on the first half of a training recording and fits with them; scored on the second half. */
+export function fitDemo(series: RecordedSeries): Model {
+  const { channel } = series;
+  const { model } = chooseSettings({
+    name: `demo ${channel}`,
+    channels: [{ channel, unit: 'K' }],
+    recordings: [[series]],
+    interval: STAND_INTERVAL,
+    gapIntervals: 3,
+    center: 'mean',
+    wishes: {
+      regime: { kind: 'sides', low: -SIDE_KELVIN, high: SIDE_KELVIN },
+      regimeChannel: null,
+      leastLead: LEAST_LEAD,
+      horizon: HORIZON,
+      threshold: null,
+      rearm: null,
+      onDelay: null,
+      holdOff: null,
+    },
+    ceiling: null,
+    pairs: PAIRS,
+    tunePart: TUNE_PART,
+    uniform: createRandom(`demo ${channel}`).uniform,
+  });
+  return { ...model, switchWord: 'reversal' };
+}
+
+function csvOf({ channel, times, values }: RecordedSeries): string {
+  const lines = [`time,${channel}`];
+  for (let i = 0; i < times.length; i++) lines.push(`${times[i]!},${values[i]!}`);
+  return `${lines.join('\n')}\n`;
+}
