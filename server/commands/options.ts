@@ -1,7 +1,7 @@
 import type { RegimeRule, Variable, WatchRule } from '../../shared-types/watch.ts';
 import { InputError } from '../signal/inputError.ts';
-import { looksLikeTime, parseTime } from '../signal/time.ts';
 import { parseRegimeRule } from '../watch/regimeRuleText.ts';
+import { watchRuleWithDefaults } from '../watch/watchRule.ts';
 
 /** Rule options as `parseArgs` of node:util takes them; shared by `fit` and `rehearse`. */
 export const ruleOptions = {
@@ -92,16 +92,17 @@ export function watchRuleOf(
   variable: Variable = 'forcing',
   direction: 'rising' | 'falling' = 'rising',
 ): WatchRule {
-  return {
+  const { leastLead, horizon, rearm, onDelay, holdOff } = choice;
+  return watchRuleWithDefaults({
     variable,
     direction,
     threshold,
-    rearm: choice.rearm ?? 0.8 * threshold,
-    onDelay: choice.onDelay ?? 0,
-    holdOff: choice.holdOff ?? choice.horizon - choice.leastLead,
-    leastLead: choice.leastLead,
-    horizon: choice.horizon,
-  };
+    leastLead,
+    horizon,
+    ...(rearm === null ? {} : { rearm }),
+    ...(onDelay === null ? {} : { onDelay }),
+    ...(holdOff === null ? {} : { holdOff }),
+  });
 }
 
 /**
@@ -138,24 +139,6 @@ export function wholeOption(values: OptionValues, name: string, least: number): 
     );
   }
   return value;
-}
-
-/**
- * A time on a recording's clock: seconds after its first sample, or an RFC 3339 string.
- *
- * @param first time of the first sample, seconds
- * @throws InputError when it is neither
- */
-export function timeOption(values: OptionValues, name: string, first: number): number | null {
-  const text = values[name];
-  if (text === undefined) return null;
-  if (typeof text === 'string' && looksLikeTime(text)) return parseTime(text);
-  const seconds = typeof text === 'string' && text.trim() !== '' ? Number(text) : Number.NaN;
-  if (Number.isFinite(seconds)) return first + seconds;
-  throw new InputError(
-    'BAD_OPTION',
-    `--${name} is "${String(text)}", expected seconds from the first sample or a time like 2026-03-01T12:00:00Z; write for example --${name} 60`,
-  );
 }
 
 /**
