@@ -113,7 +113,7 @@ export function createWatch(settings: WatchSettings, snapshot?: WatchSnapshot): 
       version: SNAPSHOT_VERSION,
       delays: model.delays,
       rank: model.rank,
-      memory: copyOf(memory),
+      memory: { ...(copyOf({ ...memory, line: null }) as Memory), line: packLine(memory.line) },
     }),
   };
 }
@@ -341,8 +341,8 @@ function stepWatched(
     kind: 'warning',
     number: memory.warnings,
     at,
-    from: at + leastLead,
-    to: at + horizon,
+    from: leastLead,
+    to: horizon,
     value,
     threshold,
   });
