@@ -1,0 +1,234 @@
+import { type ChildProcess, fork, spawn } from 'node:child_process';
+import { readFile } from 'node:fs/promises';
+import { join } from 'node:path';
+import { fileURLToPath } from 'node:url';
+import { parseArgs } from 'node:util';
+import { Settings } from '../../shared-types/settings.ts';
+import type { NewWatch } from '../../shared-types/watch.ts';
+import { complaint } from '../gateway/ingestFrame.ts';
+import { type RunningServer, startServer } from '../gateway/server.ts';
+import { modelFromJson } from '../model/modelFile.ts';
+import { InputError } from '../signal/inputError.ts';
+import { createStoreThread } from '../store/storeThread.ts';
+import { createWatch } from '../watch/watch.ts';
+import { runCommand, wholeOption } from './options.ts';
+import { programName } from './program.ts';
+
+const HELP = `foreshift watch [options]
+
+Serves the pages, takes in live channels, records them and warns.
+
+  --port N          port of the pages and of ingest (default: 4717, or FORESHIFT_PORT)
+  --listen ADDRESS  127.0.0.1 (default) or ::1; only this machine can connect
+  --data DIR        what is recorded (default: ./foreshift-data, or FORESHIFT_DATA)
+  --model MODEL.json --channel NAME   watch this channel with this model; --channel again for a model of several
+  --demo            an invented stand with two water loops, and a watch on each
+  --no-browser      do not open the page
+
+example: foreshift watch --model loop.json --channel "loop 1, dT"
+`;
+
+const OPTIONS = {
+  port: { type: 'string' },
+  listen: { type: 'string' },
+  data: { type: 'string' },
+  model: { type: 'string' },
+  channel: { type: 'string', multiple: true },
+  demo: { type: 'boolean' },
+  'no-browser': { type: 'boolean' },
+  help: { type: 'boolean', short: 'h' },
+} as const;
+
+const LOOPBACK = new Set(['127.0.0.1', '::1', 'localhost']);
+
+interface Choice {
+  port: number;
+  listen: string;
+  data: string;
+  model: { json: string; channels: string[] } | null;
+  demo: boolean;
+  browser: boolean;
+}
+
+async function modelChoice(
+  file: string | undefined,
+  channels: string[] | undefined,
+): Promise<Choice['model']> {
+  if (file === undefined && channels === undefined) return null;
+  if (file === undefined || channels === undefined)
+    throw new InputError(
+      'MODEL_AND_CHANNEL',
+      `--${file ? 'model' : 'channel'} is given alone; a watch needs both, --model MODEL.json --channel NAME`,
+    );
+  const json = await readFile(file, 'utf8').catch((error: NodeJS.ErrnoException) => {
+    throw new InputError(
+      'NO_MODEL',
+      `the model file ${file} cannot be read (${error.code}); name one that fit wrote`,
+    );
+  });
+  return { json, channels };
+}
+
+async function choose(argv: string[]): Promise<Choice | null> {
+  const { values } = parseArgs({ args: argv, options: OPTIONS });
+  if (values.help) return null;
+  const port = wholeOption({ port: values.port ?? process.env.FORESHIFT_PORT }, 'port', 0) ?? 4717;
+  if (port > 65535)
+    throw new InputError('BAD_OPTION', `--port is ${port}, expected 0 to 65535; write --port 4717`);
+  const listen = values.listen ?? '127.0.0.1';
+  if (!LOOPBACK.has(listen))
+    throw new InputError(
+      'NOT_LOOPBACK',
+      `--listen is ${listen}, but only this machine may connect for now; leave --listen out, or write --listen 127.0.0.1`,
+    );
+  return {
+    port,
+    listen,
+    data: values.data ?? process.env.FORESHIFT_DATA ?? './foreshift-data',
+    model: await modelChoice(values.model, values.channel),
+    demo: values.demo === true,
+    browser: values['no-browser'] !== true,
+  };
+}
+
+async function readSettings(data: string): Promise<Settings> {
+  const file = join(data, 'settings.json');
+  let text: string;
+  try {
+    text = await readFile(file, 'utf8');
+  } catch {
+    return Settings.parse({});
+  }
+  try {
+    const parsed = Settings.safeParse(JSON.parse(text));
+    if (parsed.success) return parsed.data;
+    throw new InputError(
+      'BAD_SETTINGS',
+      `${file} cannot be used: ${complaint(parsed.error)}; correct it or take the key out`,
+    );
+  } catch (error) {
+    if (error instanceof InputError) throw error;
+    throw new InputError('BAD_SETTINGS', `${file} is not JSON: ${(error as Error).message}; correct it`);
+  }
+}
+
+function openBrowser(address: string): void {
+  const [command, ...before] = { darwin: ['open'], win32: ['cmd', '/c', 'start', ''] }[
+    process.platform as string
+  ] ?? ['xdg-open'];
+  const opening = spawn(command!, [...before, address], { stdio: 'ignore', detached: true });
+  // Without a browser the address on the terminal does as well.
+  opening.on('error', () => {});
+  opening.unref();
+}
+
+function startStand(ingest: string, lock: string): ChildProcess {
+  const file = import.meta.url.endsWith('.js') ? './standRig.js' : './standRig.ts';
+  return fork(fileURLToPath(new URL(file, import.meta.url)), ['--to', ingest, '--lock', lock], {
+    stdio: ['ignore', 'ignore', 'inherit', 'ipc'],
+  });
+}
+
+/** Starts a watch, unless the same model is already watching the same channels. */
+async function startWatch(
+  server: RunningServer,
+  json: string,
+  asked: Omit<NewWatch, 'model'>,
+): Promise<void> {
+  const { watches } = server.hub;
+  const model = await watches.addModel(json);
+  const wanted = asked.channels.join('\n');
+  const running = watches
+    .states()
+    .some(
+      (state) =>
+        state.model === model && state.channels.join('\n') === wanted && state.use !== 'taken out of use',
+    );
+  if (!running) await watches.add({ ...asked, model });
+}
+
+/** The demo's models and watches, made at the first start. */
+async function startDemo(server: RunningServer, data: string): Promise<void> {
+  const { prepareDemo } = await import('./prepareDemo.ts');
+  const { models, watches } = await prepareDemo(data);
+  for (const wanted of watches) {
+    const model = models.find(({ name }) => name === wanted.model)!;
+    await startWatch(server, model.json, wanted);
+  }
+}
+
+function sayWhere(address: string, server: RunningServer, choice: Choice): void {
+  process.stdout.write(
+    `${programName()}\n` +
+      `  page       ${address}\n` +
+      `  producers  ws://${choice.listen}:${server.port}/ingest\n` +
+      `  data       ${choice.data}\n` +
+      'An aid to attention, not a safety function: local codes and licensed practice govern protection.\n' +
+      'Ctrl-C stops it.\n',
+  );
+}
+
+function untilStopped(): Promise<void> {
+  return new Promise((resolve) => {
+    process.once('SIGINT', () => resolve());
+    process.once('SIGTERM', () => resolve());
+  });
+}
+
+async function start(choice: Choice): Promise<RunningServer> {
+  // A model that cannot be used is told before anything is started.
+  if (choice.model) modelFromJson(choice.model.json);
+  const settings = await readSettings(choice.data);
+  const store = await createStoreThread(choice.data, { commitEvery: settings.commitEvery });
+  try {
+    return await startServer({
+      port: choice.port,
+      listen: choice.listen,
+      store,
+      settings,
+      demo: choice.demo,
+      program: programName(),
+      createWatch,
+      readModel: modelFromJson,
+      warn: (text) => process.stderr.write(`foreshift watch: ${text}\n`),
+    });
+  } catch (error) {
+    if ((error as NodeJS.ErrnoException).code !== 'EADDRINUSE') throw error;
+    throw new InputError(
+      'PORT_IN_USE',
+      `port ${choice.port} is taken by another program; stop it, or choose another with --port ${choice.port + 1}`,
+    );
+  }
+}
+
+async function run(argv: string[]): Promise<number> {
+  const choice = await choose(argv);
+  if (!choice) {
+    process.stdout.write(HELP);
+    return 0;
+  }
+  const server = await start(choice);
+  let stand: ChildProcess | null = null;
+  try {
+    if (choice.model)
+      await startWatch(server, choice.model.json, { channels: choice.model.channels, reaction: 30 });
+    if (choice.demo) await startDemo(server, choice.data);
+    const host = choice.listen === '::1' ? '[::1]' : choice.listen;
+    const address = `http://${host}:${server.port}/`;
+    const stopped = untilStopped();
+    if (choice.demo)
+      stand = startStand(`ws://${host}:${server.port}/ingest`, join(choice.data, 'demo', 'rig.lock'));
+    sayWhere(address, server, choice);
+    if (choice.browser) openBrowser(address);
+    await stopped;
+  } finally {
+    stand?.kill('SIGTERM');
+    await server.close();
+  }
+  return 0;
+}
+
+/** `foreshift watch`: the server, until it is told to stop. */
+export function watch(argv: string[]): Promise<number> {
+  return runCommand('watch', () => run(argv));
+}
