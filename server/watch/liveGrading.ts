@@ -93,7 +93,8 @@ export function settle(
     changed = true;
   }
   if (state.open > 0) changed = tellWarnings(state, spans, settled, happenings) || changed;
-  if (changed) forget(state, spans, settled);
+  // the regime channel may be far ahead of the watched ones
+  if (changed) forget(state, spans, Math.min(settled, watched));
 }
 
 function tellSwitch(
@@ -137,16 +138,16 @@ function isFirstCover(state: LiveGradingState, index: number, spans: GradingSpan
 }
 
 /** Drops what no later outcome can depend on. */
-function forget(state: LiveGradingState, spans: GradingSpans, settled: number): void {
+function forget(state: LiveGradingState, spans: GradingSpans, reached: number): void {
   const reach = (spans.horizon + 2) * spans.interval;
   const oldestOpen = state.graded.indexOf(false);
   const openAt = oldestOpen === -1 ? Number.POSITIVE_INFINITY : state.warnings[oldestOpen]!;
-  const keepSwitches = Math.min(openAt, settled) - 2 * spans.interval;
+  const keepSwitches = Math.min(openAt, reached) - 2 * spans.interval;
   let count = 0;
   while (count < state.switches.length && state.switches[count]! < keepSwitches) count++;
   state.switches.splice(0, count);
   const oldest =
-    Math.min(openAt, settled, state.waiting[0]?.at ?? settled, state.switches[0] ?? settled) - reach;
+    Math.min(openAt, reached, state.waiting[0]?.at ?? reached, state.switches[0] ?? reached) - reach;
   count = 0;
   while (count < state.warnings.length && state.warnings[count]! < oldest && state.graded[count]) count++;
   state.warnings.splice(0, count);

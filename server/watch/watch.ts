@@ -233,6 +233,7 @@ function takeJointSteps(parts: Parts, memory: Memory, scratch: Scratch, happenin
         tellLeaderGaps(parts, memory, leader, from + i, happenings);
       stepWatched(parts, memory, scratch, from, i, happenings);
       if (together && parts.ownRegime) stepRegimeChannel(parts, memory, leader, from + i, happenings);
+      else settleNow(parts, memory, happenings);
     }
   }
   if (together) return;
@@ -372,6 +373,10 @@ function stepRegimeChannel(
   else if (found !== null) {
     happenings.push({ kind: 'switch', ...found, outcome: 'pending', warningAt: null, lead: null });
   }
-  if (parts.spans === null) return;
-  settle(memory.grading, parts.spans, memory.watched, settledUntil(regime, parts.regime), happenings);
+  settleNow(parts, memory, happenings);
+}
+
+function settleNow(parts: Parts, memory: Memory, happenings: Happening[]): void {
+  if (parts.spans === null || parts.regime === null || memory.regime === null) return;
+  settle(memory.grading, parts.spans, memory.watched, settledUntil(memory.regime, parts.regime), happenings);
 }
