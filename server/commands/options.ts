@@ -77,7 +77,12 @@ export function readRuleOptions(values: OptionValues): RuleChoice | null {
   return choice;
 }
 
-function readRegime(text: string): RegimeRule {
+/**
+ * A regime rule from its text form.
+ *
+ * @throws InputError when it is none
+ */
+export function readRegime(text: string): RegimeRule {
   try {
     return parseRegimeRule(text);
   } catch (error) {

@@ -4,10 +4,12 @@ import { join } from 'node:path';
 import type { Model } from '../../shared-types/model.ts';
 import type { NewWatch } from '../../shared-types/watch.ts';
 import { modelFromJson, modelToJson } from '../model/modelFile.ts';
+import { writeCsv } from '../recordings/csv.ts';
 import type { RecordedSeries } from '../rehearsal/playback.ts';
 import { chooseSettings } from '../rehearsal/search.ts';
 import { createRandom } from '../rigs/random.ts';
 import { createStand, STAND_INTERVAL, STAND_LOOPS } from '../rigs/stand.ts';
+import { programName } from './program.ts';
 
 /** Hours of training recording: the first half for choosing, the second judged. */
 const TRAINING_HOURS = 6;
@@ -39,17 +41,15 @@ export interface PreparedDemo {
  * Makes what the demo needs in `DATA/demo`: a training recording of each loop (CSV, simulated at once), settings
  * chosen on its first half, and a model with its rules and the score of the second half. What an earlier start made is
  * used again.
- *
- * @param program name and version, for the models' provenance
  */
-export async function prepareDemo(dataFolder: string, program: string): Promise<PreparedDemo> {
+export async function prepareDemo(dataFolder: string): Promise<PreparedDemo> {
   const folder = join(dataFolder, 'demo');
   await mkdir(folder, { recursive: true });
   const prepared: PreparedDemo = { models: [], watches: [], recordings: [] };
   for (const { channel } of STAND_LOOPS) {
     const recording = join(folder, `${channel}.csv`);
     const file = join(folder, `${channel}.model.json`);
-    const json = (await earlier(file, recording)) ?? (await makeModel(channel, recording, file, program));
+    const json = (await earlier(file, recording)) ?? (await makeModel(channel, recording, file));
     const name = `demo ${channel}`;
     prepared.models.push({ name, json, model: modelFromJson(json), file });
     prepared.watches.push({ name: watchName(channel), model: name, channels: [channel], reaction: REACTION });
@@ -73,15 +73,15 @@ async function earlier(file: string, recording: string): Promise<string | null> 
   }
 }
 
-async function makeModel(channel: string, recording: string, file: string, program: string): Promise<string> {
+async function makeModel(channel: string, recording: string, file: string): Promise<string> {
   const series = trainingSeries(channel);
-  const text = csvOf(series);
+  const text = writeCsv({ name: recording, channels: [{ ...series, unit: 'K' }], sha256: '' });
   await writeFile(recording, text);
   const model = fitDemo(series);
   const { times } = series;
   const fittedTo = times[0]! + TUNE_PART * (times.at(-1)! - times[0]!);
   model.provenance = {
-    program,
+    program: programName(),
     fittedAt: new Date().toISOString(),
     recordings: [
       {
@@ -133,10 +133,4 @@ export function fitDemo(series: RecordedSeries): Model {
     uniform: createRandom(`demo ${channel}`).uniform,
   });
   return { ...model, switchWord: 'reversal' };
-}
-
-function csvOf({ channel, times, values }: RecordedSeries): string {
-  const lines = [`time,${channel}`];
-  for (let i = 0; i < times.length; i++) lines.push(`${times[i]!},${values[i]!}`);
-  return `${lines.join('\n')}\n`;
 }

@@ -72,12 +72,21 @@ export function gridRecording(
   const last = runs.at(-1)!;
   const end = last.start + (last.newest.length - 1) * interval;
   const { switches, unseen, known } = findSwitches(
-    seriesOf(series, settings.regimeChannel ?? channels[0]!),
+    seriesOf(series, regimeChannelOf(settings.regime, settings.regimeChannel, channels)),
     settings,
   );
   // only what lies within the watched time can be graded
   const within = switches.filter(({ at }) => at >= start - interval / 2 && at <= end + interval / 2);
   return { interval, start, end, known: Math.min(known, end), runs, switches: within, unseen };
+}
+
+/** The channel a regime rule reads: that of its marks, the one named, or the first of the watched ones. */
+export function regimeChannelOf(
+  regime: RegimeRule,
+  named: string | null,
+  channels: readonly string[],
+): string {
+  return named ?? (regime.kind === 'marks' ? regime.channel : channels[0]!);
 }
 
 /** The recorded channel of this name.

@@ -6,7 +6,7 @@ import type { ConfirmedSwitch } from '../watch/regimeRule.ts';
 import type { Happening, Steps, WatchSettings } from '../watch/types.ts';
 import { createWatch } from '../watch/watch.ts';
 import { toSteps } from '../watch/watchRule.ts';
-import { findSwitches, seriesOf } from './gridded.ts';
+import { findSwitches, regimeChannelOf, seriesOf } from './gridded.ts';
 import { judgedFromTimes, scoredFromTime } from './parts.ts';
 import { framesOf, type RecordedSeries } from './playback.ts';
 import { type RecordToScore, scoreRecords } from './score.ts';
@@ -117,7 +117,10 @@ interface Played {
 
 function play(settings: WatchSettings, series: readonly RecordedSeries[], frame?: number): Played {
   const { model, regime, channels } = settings;
-  const watch = createWatch(settings);
+  const watch = createWatch({
+    ...settings,
+    regimeChannel: regimeChannelOf(regime!, settings.regimeChannel, channels),
+  });
   const warnings: WarningHappening[] = [];
   const seen = { start: Number.NaN, end: Number.NaN, sight: [] as Stretch[], full: false };
   const wanted = watch.wants().map((channel) => seriesOf(series, channel));
@@ -127,7 +130,7 @@ function play(settings: WatchSettings, series: readonly RecordedSeries[], frame?
     for (const happening of happenings) if (happening.kind === 'warning') warnings.push(happening);
   }
   const { start, end, sight } = seen;
-  const regimeSeries = seriesOf(series, settings.regimeChannel ?? channels[0]!);
+  const regimeSeries = seriesOf(series, regimeChannelOf(regime!, settings.regimeChannel, channels));
   const found = findSwitches(regimeSeries, { ...model, regime: regime! });
   const half = model.interval / 2;
   const switches = found.switches.filter(({ at }) => at >= start - half && at <= end + half);
@@ -191,7 +194,6 @@ function gradedWarnings(
 ): RehearsedWarning[] {
   return warnings.map(({ at, from, to, value }, index) => {
     const grade = gradeWarning(record, index, spans, record.known);
-    // a watch gives a span in seconds after `at`; here it is in channel time
-    return { recording, at, from: at + from, to: at + to, value, ...grade, part: partOf(recording, at) };
+    return { recording, at, from, to, value, ...grade, part: partOf(recording, at) };
   });
 }

@@ -6,7 +6,7 @@ import { prepareDemo } from '../../../server/commands/prepareDemo.ts';
 
 const folder = await mkdtemp(join(tmpdir(), 'foreshift-demo-'));
 afterAll(() => rm(folder, { recursive: true, force: true }));
-const prepared = await prepareDemo(folder, 'foreshift, test');
+const prepared = await prepareDemo(folder);
 
 describe('preparing the demo', () => {
   it('makes a model a loop that can be watched as it is', () => {
@@ -36,7 +36,7 @@ describe('preparing the demo', () => {
   it('leaves the training recordings as files, with the half used named in the model', async () => {
     const text = await readFile(prepared.recordings[0]!, 'utf8');
     const lines = text.trim().split('\n');
-    expect(lines[0]).toBe('time,loop-a');
+    expect(lines[0]).toMatch(/^time.*,loop-a.*K/);
     expect(lines.length).toBeGreaterThan(53_000);
     const [used] = prepared.models[0]!.model.provenance.recordings;
     expect(used!.to).toBeCloseTo(3 * 3600, -1);
@@ -44,7 +44,7 @@ describe('preparing the demo', () => {
   });
 
   it('uses again what an earlier start made', async () => {
-    const again = await prepareDemo(folder, 'foreshift, another');
+    const again = await prepareDemo(folder);
     expect(again.models.map(({ json }) => json)).toEqual(prepared.models.map(({ json }) => json));
   });
 });
