@@ -8,5 +8,6 @@ export default defineConfig({
     hookTimeout: 60_000,
     pool: 'forks',
     maxWorkers: 2,
+    reporters: ['default', new URL('./plainReporter.ts', import.meta.url).pathname],
   },
 });
