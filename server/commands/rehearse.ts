@@ -9,6 +9,7 @@ import { type Rehearsal, rehearse as rehearseWatch } from '../rehearsal/rehearse
 import { createRandom } from '../rigs/random.ts';
 import { InputError } from '../signal/inputError.ts';
 import type { WatchSettings } from '../watch/types.ts';
+import { steppedRule } from '../watch/watchRule.ts';
 import {
   numberOption,
   printJson,
@@ -157,7 +158,7 @@ function settingsOf(model: Model, values: Values): WatchSettings {
         ? model.regimeChannel
         : channels[own]!
       : String(values['regime-channel']);
-  return { model, channels, rule: ruleOf(model.rule, values), regime: needRegime(regime), regimeChannel };
+  return { model, channels, rule: ruleOf(model, values), regime: needRegime(regime), regimeChannel };
 }
 
 function needRegime(regime: RegimeRule | null): RegimeRule {
@@ -169,7 +170,7 @@ function needRegime(regime: RegimeRule | null): RegimeRule {
 }
 
 /** The model's own rule with what the options replace; re-arm and hold-off follow by default where theirs was replaced. */
-function ruleOf(own: WatchRule | null, values: Values): WatchRule {
+function ruleOf({ rule: own, interval }: Model, values: Values): WatchRule {
   const need = (name: string, from: number | undefined): number => {
     const value = numberOption(values, name, name === 'threshold' ? undefined : 0) ?? from;
     if (value !== undefined) return value;
@@ -183,7 +184,7 @@ function ruleOf(own: WatchRule | null, values: Values): WatchRule {
   const horizon = need('horizon', own?.horizon);
   const spansKept = values['least-lead'] === undefined && values.horizon === undefined;
   const kept = own !== null && values.threshold === undefined ? own.rearm : 0.8 * threshold;
-  return {
+  const rule: WatchRule = {
     variable: own?.variable ?? 'forcing',
     direction: own?.direction ?? 'rising',
     threshold,
@@ -194,6 +195,12 @@ function ruleOf(own: WatchRule | null, values: Values): WatchRule {
     leastLead,
     horizon,
   };
+  try {
+    steppedRule(rule, interval);
+  } catch (error) {
+    throw new InputError('BAD_RULE', (error as Error).message);
+  }
+  return rule;
 }
 
 function partOption(values: Values): number {
