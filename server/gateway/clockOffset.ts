@@ -18,6 +18,14 @@ const PAUSE_SECONDS = 2;
 /** an offset falling faster than this, in seconds a second, means that held-up data are being sent after */
 const CATCHING_UP = 0.1;
 const SMOOTHING = 0.1;
+/** Unix times from here on; below it is elapsed time, whose zero says nothing */
+const UNIX_FROM = 1e8;
+const DAY_SECONDS = 86_400;
+
+/** Unix times of the last day are at first taken for data held up, not for a clock that is slow. */
+function firstOffset(time: number, offset: number): number {
+  return time >= UNIX_FROM && offset > 0 && offset < DAY_SECONDS ? 0 : offset;
+}
 
 export function createClockOffset(least: number | null): ClockOffset {
   return {
@@ -39,7 +47,7 @@ export function createClockOffset(least: number | null): ClockOffset {
  */
 export function noteArrival(clock: ClockOffset, time: number, arrival: number): void {
   const offset = arrival - time;
-  clock.least = clock.least === null ? offset : Math.min(clock.least, offset);
+  clock.least = clock.least === null ? firstOffset(time, offset) : Math.min(clock.least, offset);
   clock.smooth = clock.smooth === null ? offset : clock.smooth + SMOOTHING * (offset - clock.smooth);
   const elapsed = arrival - clock.windowStart;
   if (arrival - clock.newest > PAUSE_SECONDS || elapsed >= WINDOW_SECONDS) {
