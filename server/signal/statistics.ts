@@ -65,10 +65,14 @@ export function lagOneAutocorrelation(values: Float64Array): number {
   const { origin } = moments;
   const mean = moments.mean + moments.meanLost;
   let products = 0;
+  let lost = 0;
   for (let i = 0; i + 1 < values.length; i++) {
-    products += (values[i]! - origin - mean) * (values[i + 1]! - origin - mean);
+    const product = (values[i]! - origin - mean) * (values[i + 1]! - origin - mean);
+    const sum = products + product;
+    lost += Math.abs(products) >= Math.abs(product) ? products - sum + product : product - sum + products;
+    products = sum;
   }
-  return products / (moments.squares + moments.squaresLost);
+  return (products + lost) / (moments.squares + moments.squaresLost);
 }
 
 /** Median; the mean of the two middle values for an even count, NaN for none. `values` stays as it is. */
