@@ -103,7 +103,9 @@ function drawn(
   while (samples / FAN_OUT ** level > 4 * columns) level++;
   const start = Number.isFinite(from) ? from : spans[0]!.from;
   const end = Number.isFinite(to) ? to : spans.at(-1)!.to;
-  const gatherer = gatherColumns(start, end > start ? end : start + 1, Math.max(1, Math.floor(columns)));
+  // few samples are drawn one by one: columns of their own, far narrower than an interval
+  const bins = Math.max(1, Math.floor(columns)) * (samples <= 2 * columns ? 1024 : 1);
+  const gatherer = gatherColumns(start, end > start ? end : start + 1, bins);
   for (const range of ranges) reader.walk(range.segment.id, level, range.from, range.to, gatherer);
   return gatherer.columns(interval);
 }

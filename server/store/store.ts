@@ -78,7 +78,7 @@ export interface StoreReader {
   samplesFrom(channel: string, ordinal: number, most: number): Promise<StoredBlock>;
   /** samples with from ≤ t ≤ to, oldest first; where times were recorded twice, what arrived last */
   samplesBetween(channel: string, from: number, to: number): Promise<StoredBlock>;
-  /** drawing data of a channel or of a watch's trace from the min/max pyramid: about `columns` columns over [from, to] */
+  /** drawing data of a channel or of a watch's trace from the min/max pyramid: about `columns` columns over [from, to], at most twice as many and a NaN one at each break */
   signalColumns(channel: string, from: number, to: number, columns: number): Promise<Columns>;
   traceColumns(watch: string, from: number, to: number, columns: number): Promise<Columns>;
   /** what a channel has stored, cut where nothing came for `gapSeconds` */

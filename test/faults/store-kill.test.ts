@@ -11,10 +11,12 @@ const script = fileURLToPath(new URL('./appendUntilKilled.mjs', import.meta.url)
 async function appendAndKill(folder: string, milliseconds: number): Promise<number[]> {
   const child = spawn(process.execPath, [script, folder], { stdio: ['ignore', 'pipe', 'inherit'] });
   let said = '';
-  let timer: NodeJS.Timeout | undefined;
+  let counting = false;
   child.stdout.on('data', (data: Buffer) => {
     said += data.toString();
-    if (/\n\d+\n/.test(said)) timer ??= setTimeout(() => child.kill('SIGKILL'), milliseconds);
+    if (counting || !/\n\d+\n/.test(said)) return;
+    counting = true;
+    setTimeout(() => child.kill('SIGKILL'), milliseconds);
   });
   await once(child, 'close');
   // a number cut off by the kill was not reported

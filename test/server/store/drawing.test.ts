@@ -14,6 +14,15 @@ test('few samples are drawn one by one, at their own times, and a NaN breaks the
   await store.close();
 });
 
+test('up to twice as many samples as columns are drawn one by one, at Unix times too', async () => {
+  const store = openStore(temporaryFolder(), { commitEvery: 0.005 });
+  const values = Float64Array.from({ length: 1001 }, (_, i) => i);
+  await store.appendFrames([frame(0, 1.7e9, values, { dt: 0.001 })]);
+  const { low, high } = await store.signalColumns('A', 1.7e9, 1.7e9 + 1.001, 1000);
+  expect([low, high]).toEqual([values, values]);
+  await store.close();
+});
+
 test('missing time breaks the line at any depth of the pyramid, jitter does not', async () => {
   const store = openStore(temporaryFolder(), { commitEvery: 0.005 });
   const values = new Float64Array(50_000).fill(1);
