@@ -1,12 +1,9 @@
 import { InputError } from '../signal/inputError.ts';
 import { looksLikeTime, parseTime } from '../signal/time.ts';
 import { type CsvLayout, readHeader } from './csvHeader.ts';
+import { type CsvScanner, cellText, nextCell, separatorOf, skipBlank } from './csvScanner.ts';
 import { saysNothing, scanNumber } from './numberScanner.ts';
 
-const NEWLINE = 10;
-const RETURN = 13;
-const QUOTE = 34;
-const HASH = 35;
 const COMMA = 44;
 const POINT = 46;
 
@@ -18,19 +15,6 @@ export interface CsvTable {
   values: Float64Array[];
 }
 
-/** Where the scanner is: the cell [cellFrom, cellTo) it read last and what follows it. */
-interface Scanner {
-  bytes: Uint8Array;
-  at: number;
-  line: number;
-  separator: number;
-  /** the cell, without its quotes and the blanks around it */
-  cellFrom: number;
-  cellTo: number;
-  quoted: boolean;
-  lastOfRow: boolean;
-}
-
 /**
  * Reads a CSV file's bytes in one pass (RFC 4180; separator comma, semicolon or tab; `#` lines are comments).
  *
@@ -39,7 +23,7 @@ interface Scanner {
  */
 export function readRows(bytes: Uint8Array, file: string, interval: number | undefined): CsvTable {
   const start = bytes[0] === 0xef && bytes[1] === 0xbb && bytes[2] === 0xbf ? 3 : 0;
-  const scanner: Scanner = {
+  const scanner: CsvScanner = {
     bytes,
     at: start,
     line: 1,
@@ -49,7 +33,7 @@ export function readRows(bytes: Uint8Array, file: string, interval: number | und
     quoted: false,
     lastOfRow: false,
   };
-  skipComments(scanner, true);
+  skipBlank(scanner);
   if (scanner.at >= bytes.length)
     throw new InputError(
       'CSV_EMPTY',
@@ -104,86 +88,7 @@ function trimmed(table: CsvTable): CsvTable {
   };
 }
 
-/** Moves over comment lines, and over blank ones where asked; returns how many blank ones there were. */
-function skipComments(scanner: Scanner, blankToo: boolean): number {
-  const { bytes } = scanner;
-  let blank = 0;
-  while (scanner.at < bytes.length) {
-    const byte = bytes[scanner.at];
-    if (byte === HASH) {
-      while (scanner.at < bytes.length && bytes[scanner.at] !== NEWLINE) scanner.at++;
-      scanner.at++;
-    } else if (blankToo && byte === NEWLINE) {
-      scanner.at++;
-      blank++;
-    } else if (blankToo && byte === RETURN && (bytes[scanner.at + 1] ?? NEWLINE) === NEWLINE) {
-      scanner.at += 2;
-      blank++;
-    } else break;
-    scanner.line++;
-  }
-  return blank;
-}
-
-function separatorOf(bytes: Uint8Array, from: number): number {
-  let quoted = false;
-  let semicolon = false;
-  for (let i = from; i < bytes.length && (quoted || bytes[i] !== NEWLINE); i++) {
-    if (bytes[i] === QUOTE) quoted = !quoted;
-    else if (!quoted && bytes[i] === 9) return 9;
-    else if (!quoted && bytes[i] === 59) semicolon = true;
-  }
-  return semicolon ? 59 : COMMA;
-}
-
-function nextCell(scanner: Scanner, file: string): void {
-  const { bytes, separator } = scanner;
-  const end = bytes.length;
-  let at = scanner.at;
-  while (at < end && bytes[at] === 32) at++;
-  scanner.quoted = bytes[at] === QUOTE;
-  let from = at;
-  let to: number;
-  if (scanner.quoted) {
-    from = ++at;
-    const opened = scanner.line;
-    for (; ; at++) {
-      if (at >= end)
-        throw new InputError(
-          'CSV_OPEN_QUOTE',
-          `${file} line ${opened} opens a quote that is never closed; expected a second "; close it or remove it`,
-        );
-      if (bytes[at] === NEWLINE) scanner.line++;
-      if (bytes[at] !== QUOTE) continue;
-      if (bytes[at + 1] !== QUOTE) break;
-      at++;
-    }
-    to = at++;
-    while (at < end && (bytes[at] === 32 || bytes[at] === RETURN)) at++;
-    if (at < end && bytes[at] !== separator && bytes[at] !== NEWLINE)
-      throw new InputError(
-        'CSV_AFTER_QUOTE',
-        `${file} line ${scanner.line} has text after a closing quote; expected a separator or the end of the line; ` +
-          'double a quote that belongs to the text',
-      );
-  } else {
-    while (at < end && bytes[at] !== separator && bytes[at] !== NEWLINE) at++;
-    to = at;
-    while (to > from && (bytes[to - 1] === 32 || bytes[to - 1] === RETURN)) to--;
-  }
-  scanner.cellFrom = from;
-  scanner.cellTo = to;
-  scanner.lastOfRow = at >= end || bytes[at] === NEWLINE;
-  scanner.at = at + 1;
-  if (scanner.lastOfRow && at < end) scanner.line++;
-}
-
-function cellText({ bytes, cellFrom, cellTo, quoted }: Scanner): string {
-  const text = new TextDecoder().decode(bytes.subarray(cellFrom, cellTo));
-  return quoted ? text.replaceAll('""', '"') : text.trim();
-}
-
-function readBody(scanner: Scanner, table: CsvTable, file: string, interval: number): void {
+function readBody(scanner: CsvScanner, table: CsvTable, file: string, interval: number): void {
   const { layout } = table;
   const columns = layout.columns.length;
   const decimalMark = scanner.separator === COMMA ? POINT : COMMA;
@@ -214,15 +119,6 @@ function readBody(scanner: Scanner, table: CsvTable, file: string, interval: num
   }
 }
 
-function skipBlank(scanner: Scanner): number {
-  let blank = 0;
-  for (let line = -1; line !== scanner.line; ) {
-    line = scanner.line;
-    blank += skipComments(scanner, true);
-  }
-  return blank;
-}
-
 function addRow(table: CsvTable, interval: number, value: number): void {
   if (table.rows === table.times.length) grow(table);
   table.values[0]![table.rows] = value;
@@ -230,13 +126,13 @@ function addRow(table: CsvTable, interval: number, value: number): void {
   table.rows++;
 }
 
-function numberCell({ bytes, cellFrom, cellTo }: Scanner, decimalMark: number): number {
+function numberCell({ bytes, cellFrom, cellTo }: CsvScanner, decimalMark: number): number {
   const value = scanNumber(bytes, cellFrom, cellTo, POINT);
   return decimalMark === POINT || !Number.isNaN(value) ? value : scanNumber(bytes, cellFrom, cellTo, COMMA);
 }
 
 function valueCell(
-  scanner: Scanner,
+  scanner: CsvScanner,
   layout: CsvLayout,
   column: number,
   file: string,
@@ -253,7 +149,7 @@ function valueCell(
 }
 
 function timeCell(
-  scanner: Scanner,
+  scanner: CsvScanner,
   table: CsvTable,
   file: string,
   line: number,
@@ -284,7 +180,7 @@ function timeCell(
   );
 }
 
-function countRest(scanner: Scanner, file: string, cells: number): number {
+function countRest(scanner: CsvScanner, file: string, cells: number): number {
   let count = cells;
   while (!scanner.lastOfRow) {
     nextCell(scanner, file);
