@@ -1,0 +1,66 @@
+import type { ModelSummary } from '../shared-types/model.ts';
+import type { NewWatch, WatchAction } from '../shared-types/watch.ts';
+import type { FetchedColumns } from './columns.ts';
+
+/** An action as the page sends it; the server fills what is left out. */
+export type ActionToSend = WatchAction extends infer A
+  ? A extends { by: string }
+    ? Omit<A, 'by'> & { by: string }
+    : never
+  : never;
+
+/** Does something to a watch. @throws Error with the server's own sentence */
+export async function act(watch: string, action: ActionToSend): Promise<void> {
+  await send(`/api/watches/${encodeURIComponent(watch)}/actions`, action);
+}
+
+/** Puts a model on channels. @throws Error with the server's own sentence */
+export async function startWatch(watch: Omit<NewWatch, 'reaction'>): Promise<void> {
+  await send('/api/watches', watch);
+}
+
+/** The models there are. @throws Error with the server's own sentence */
+export async function models(): Promise<ModelSummary[]> {
+  const listed: unknown = await ask('/api/models');
+  if (Array.isArray(listed)) return listed as ModelSummary[];
+  const inside = (listed as { models?: unknown }).models;
+  return Array.isArray(inside) ? (inside as ModelSummary[]) : [];
+}
+
+/** Drawing columns of a channel's signal or a watch's trace between two times. @throws Error with the server's own sentence */
+export async function columnsOf(
+  of: { kind: 'channels' | 'watches'; name: string },
+  from: number,
+  to: number,
+  columns: number,
+): Promise<FetchedColumns> {
+  const query = new URLSearchParams({
+    from: String(from),
+    to: String(to),
+    columns: String(Math.round(columns)),
+  });
+  return (await ask(`/api/${of.kind}/${encodeURIComponent(of.name)}/columns?${query}`)) as FetchedColumns;
+}
+
+async function send(address: string, body: unknown): Promise<void> {
+  await ask(address, {
+    method: 'POST',
+    headers: { 'content-type': 'application/json' },
+    body: JSON.stringify(body),
+  });
+}
+
+async function ask(address: string, init?: RequestInit): Promise<unknown> {
+  let response: Response;
+  try {
+    response = await fetch(address, init);
+  } catch {
+    throw new Error('Foreshift’s server cannot be reached: nothing was changed; try again once it answers.');
+  }
+  const body: unknown = await response.json().catch(() => null);
+  if (response.ok) return body;
+  const detail = (body as { detail?: unknown } | null)?.detail;
+  throw new Error(
+    typeof detail === 'string' ? detail : `The server answered ${response.status} ${response.statusText}.`,
+  );
+}

@@ -1,0 +1,180 @@
+import type { FeedMessage } from '../../shared-types/feed.ts';
+import type { Warning } from '../../shared-types/warning.ts';
+import { mark, monotonic } from '../dom.ts';
+import { createDrawingData, draw } from '../drawingData.ts';
+import { NOTHING_YET, reduce } from '../feedState.ts';
+import { lookFor, nextLook } from '../look.ts';
+import { createClock, steer, timeAt } from '../now.ts';
+import { recall, remember } from '../remembered.ts';
+import { act } from '../requests.ts';
+import { spillInk } from '../strip/ink.ts';
+import { stance } from '../strip/spoken.ts';
+import { type PageView, type StripView, spokenFor } from '../strip/view.ts';
+import { createAttention } from './attention.ts';
+import { askToShelve, explainWatching, showKeys, whoIsHere } from './dialogs.ts';
+import { createFrame } from './frame.ts';
+import { listenForKeys } from './keys.ts';
+import { createStrips } from './strips.ts';
+import { nameOf } from './today.ts';
+
+/** A server unheard for this long counts as lost, seconds. */
+const LOST_AFTER = 2.5;
+
+/** The Watch page: what the feed tells it goes in, what it draws of the past comes out through `ask`. */
+export interface WatchPage {
+  receive(message: FeedMessage): void;
+  opened(): void;
+  closed(): void;
+}
+
+/**
+ * Mounts the page and draws it from then on.
+ *
+ * @param ask called with what the page wants drawn, at once and at each change
+ */
+export function mountWatch(
+  host: HTMLElement,
+  ask: (look: { seconds: number; columns: number }) => void,
+): WatchPage {
+  const server = createClock();
+  const attention = createAttention();
+  const view: PageView = {
+    state: NOTHING_YET,
+    data: createDrawingData(),
+    look: { seconds: Number(recall('look', '')) || 180, columns: 800 },
+    zoom: null,
+    readAgo: null,
+    drag: null,
+    monotonic: monotonic(),
+    today: 0,
+    lost: false,
+  };
+  let chosenLook = recall('look', '') !== '';
+  let connected = false;
+  let heard = monotonic();
+  const called = new Set<number>();
+
+  const strips = createStrips(view, {
+    acknowledge: (watch, upTo) => act(watch, { action: 'acknowledge', upTo, by: whoIsHere() }),
+    shelve: (watch) => askToShelve(watch, nameOf(view.state, watch)),
+    putBack: (watch, from) =>
+      act(watch, { action: from === 'shelved' ? 'unshelve' : 'return to service', by: whoIsHere() }),
+    explainWatching,
+  });
+  const frame = createFrame(host, strips, attention, showKeys);
+
+  const look = (seconds: number, columns: number) => {
+    if (seconds === view.look.seconds && columns === view.look.columns) return;
+    view.look = { seconds, columns };
+    ask(view.look);
+  };
+  strips.onColumns((columns) => look(view.look.seconds, columns));
+
+  const waiting = (): StripView[] => strips.views().filter((each) => stance(each) === 'asks');
+  const inHand = (): StripView | null => strips.chosen() ?? waiting()[0] ?? null;
+  listenForKeys({
+    acknowledge: () => {
+      const target = [strips.chosen(), ...waiting()].find(
+        (each) => each?.watch && each.warnings.length > 0 && /unacknowledged/.test(each.watch.state),
+      );
+      if (target?.watch)
+        act(target.watch.watch, {
+          action: 'acknowledge',
+          upTo: target.warnings.at(-1)!.id,
+          by: whoIsHere(),
+        }).catch(frame.complain);
+    },
+    shelve: () => {
+      const watch = inHand()?.watch;
+      if (watch?.rule && watch.state !== 'shelved') askToShelve(watch.watch, nameOf(view.state, watch.watch));
+    },
+    move: (by) => strips.move(by),
+    read: (by) => strips.read(by),
+    span: (way) => {
+      chosenLook = true;
+      strips.live();
+      look(nextLook(view.look.seconds, way), view.look.columns);
+      remember('look', String(view.look.seconds));
+    },
+    live: () => strips.live(),
+    help: showKeys,
+  });
+
+  const callFor = (warning: Warning) => {
+    if (called.has(warning.id)) return;
+    called.add(warning.id);
+    const watch = view.state.watches.get(warning.watch);
+    const now = timeAt(view.data.clocks.get(warning.channels[0] ?? ''), monotonic());
+    if (
+      watch === undefined ||
+      now === null ||
+      warning.quiet ||
+      watch.state === 'shelved' ||
+      watch.state === 'out of service' ||
+      watch.use !== 'in use'
+    )
+      return;
+    if (warning.outcome !== 'open' || now > warning.to) return;
+    attention.call(warning, view.state, now);
+  };
+
+  const tick = () => {
+    view.monotonic = monotonic();
+    view.today = timeAt(server, view.monotonic) ?? 0;
+    view.lost = view.state.welcomed && (!connected || view.monotonic - heard > LOST_AFTER);
+    frame.update(view, connected, view.monotonic - heard);
+    attention.show(waiting().map((each) => titleOf(each)));
+  };
+  setInterval(tick, 250);
+  const still = matchMedia('(prefers-reduced-motion: reduce)');
+  let stillSince = 0;
+  const animate = (at: number) => {
+    requestAnimationFrame(animate);
+    if (still.matches && at - stillSince < 1000) return;
+    stillSince = at;
+    view.monotonic = monotonic();
+    strips.animate();
+  };
+  requestAnimationFrame(animate);
+  for (const query of ['(prefers-color-scheme: dark)', 'print']) {
+    matchMedia(query).addEventListener('change', () => {
+      spillInk();
+      strips.paintAll();
+    });
+  }
+  ask(view.look);
+
+  return {
+    opened: () => {
+      connected = true;
+    },
+    closed: () => {
+      connected = false;
+      tick();
+    },
+    receive: (message) => {
+      connected = true;
+      heard = monotonic();
+      if (message.kind === 'beat') steer(server, message.serverTime, 0, heard);
+      if (message.kind === 'welcome') {
+        steer(server, message.welcome.serverTime, 0, heard);
+        for (const { id } of message.welcome.warnings) called.add(id);
+      }
+      view.state = reduce(view.state, message);
+      draw(view.data, view.state, message, view.look, heard);
+      if (message.kind === 'warning') callFor(message.warning);
+      if ((message.kind === 'welcome' || message.kind === 'watch') && !chosenLook) {
+        const rules = [...view.state.watches.values()].filter(
+          (watch) => watch.use === 'in use' && watch.rule !== null,
+        );
+        look(lookFor(rules.map((watch) => watch.rule!.horizon)), view.look.columns);
+      }
+      mark(host, 'data-welcomed', view.state.welcomed ? 'yes' : null);
+    },
+  };
+}
+
+function titleOf(view: StripView): string {
+  const warning = spokenFor(view)!;
+  return `${view.channel.channel}: ${view.watch!.switchWord} ${view.now! < warning.from ? 'expected' : 'at any moment'}`;
+}

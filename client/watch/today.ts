@@ -1,0 +1,97 @@
+import { element, mark, say } from '../dom.ts';
+import type { PageState } from '../feedState.ts';
+import { acknowledgedText, gradeSentence, outcomeText, settledText } from '../warningWords.ts';
+import { clockText, minuteText } from '../words.ts';
+
+/** Below the strips: today's grade beside what rehearsal promised, and the last warnings with what became of them. */
+export interface Today {
+  root: HTMLElement;
+  update(state: PageState, today: number): void;
+}
+
+const ROWS = 12;
+
+/** Creates the lower part of the page. */
+export function createToday(): Today {
+  const since = element('h2', 'since');
+  const sentence = element('p', 'sentence');
+  const body = element('tbody');
+  const heads = ['Time', 'Channel', 'What became of it', 'Seen to', 'Span or lead'].map((text) => {
+    const head = element('th', '', text);
+    head.scope = 'col';
+    return head;
+  });
+  const table = element(
+    'table',
+    'last',
+    element('caption', 'unseen', 'The last warnings, newest first'),
+    element('thead', '', element('tr', '', ...heads)),
+    body,
+  );
+  const none = element('p', 'none', 'No warning yet.');
+  let known: PageState | null = null;
+  let day = -1;
+  return {
+    root: element('section', 'grades', since, element('div', 'gradeWords', sentence, table, none)),
+    update: (state, today) => {
+      if (
+        known !== null &&
+        known.watches === state.watches &&
+        known.warnings === state.warnings &&
+        day === Math.floor(today / 86400)
+      )
+        return;
+      known = state;
+      day = Math.floor(today / 86400);
+      const watches = [...state.watches.values()].filter(
+        (watch) => watch.use === 'in use' && watch.rule !== null,
+      );
+      const starts = watches.map((watch) => watch.gradeSince).filter((time) => time !== null);
+      say(since, starts.length > 0 ? `Since ${minuteText(Math.min(...starts), today)}` : 'So far');
+      say(
+        sentence,
+        watches.length === 0
+          ? 'No watch is in use.'
+          : watches.map((watch) => gradeSentence(watch, nameOf(state, watch.watch))).join(' '),
+      );
+      const last = [...state.warnings.values()]
+        .sort((a, b) => b.madeAt - a.madeAt || b.id - a.id)
+        .slice(0, ROWS);
+      table.hidden = last.length === 0;
+      none.hidden = last.length > 0;
+      body.replaceChildren(...last.map((warning) => rowOf(state, warning.id, today)));
+    },
+  };
+}
+
+/** What a watch is called on the page: by its channel where that is unmistakable. */
+export function nameOf(state: PageState, watch: string): string {
+  const known = state.watches.get(watch);
+  if (known === undefined) return watch;
+  const first = known.channels[0] ?? known.name;
+  const others = [...state.watches.values()].filter(
+    (each) => each.use === 'in use' && each.channels[0] === first,
+  );
+  return others.length > 1 ? known.name : first;
+}
+
+function rowOf(state: PageState, id: number, today: number): HTMLTableRowElement {
+  const warning = state.warnings.get(id)!;
+  const watch = state.watches.get(warning.watch);
+  const waits =
+    warning.outcome === 'open' && warning.acknowledgedAt === null && !warning.quiet && !watch?.trigger;
+  const another = warning.at > 1e8 && Math.floor(warning.at / 86400) !== Math.floor(today / 86400);
+  const time = another ? minuteText(warning.at, today) : clockText(warning.at, 1);
+  const row = element(
+    'tr',
+    '',
+    element('td', '', time),
+    element('td', '', nameOf(state, warning.watch)),
+    element('td', 'outcome', waits ? '▲ open' : outcomeText(warning)),
+    element('td', '', acknowledgedText(warning, watch)),
+    element('td', '', settledText(warning, watch)),
+  );
+  mark(row, 'data-waits', waits ? 'yes' : null);
+  mark(row, 'data-outcome', warning.outcome);
+  return row;
+}
