@@ -5,6 +5,7 @@
  */
 import { randomUUID } from 'node:crypto';
 import { readFileSync, rmSync, statSync, utimesSync, writeFileSync } from 'node:fs';
+import { setTimeout as sleep } from 'node:timers/promises';
 import { pathToFileURL } from 'node:url';
 import { parseArgs } from 'node:util';
 import type { ChannelDescription } from '../../shared-types/channel.ts';
@@ -21,9 +22,11 @@ const PAST_FRAME = 50;
 /** Seconds between frames: about one sample in each, two in some, none in others. */
 const TICK_SECONDS = 0.25;
 /** A rig that has found no server for so long ends itself. */
-const GIVE_UP_SECONDS = 600;
+const GIVE_UP_SECONDS = 300;
 /** A lock file older than this belongs to a rig that is gone. */
 const LOCK_SECONDS = 15;
+/** Seconds between looks at another rig's lock. */
+const LOOK_SECONDS = 2;
 
 const ROOM = {
   channel: 'room-humidity',
@@ -84,8 +87,8 @@ export function* framesOfDue(due: readonly Due[], most: number): Generator<[stri
 }
 
 /**
- * Sends both loops and the room's humidity to a server in real time until it is stopped or has found no server for ten
- * minutes.
+ * Sends both loops and the room's humidity to a server in real time until it is stopped or has found no server for
+ * five minutes.
  *
  * @returns the exit code
  */
@@ -99,18 +102,33 @@ export async function standRig(argv: string[]): Promise<number> {
       lock: { type: 'string' },
     },
   });
-  if (values.lock !== undefined && !takeLock(values.lock, values.to)) {
-    process.stderr.write(`the demo's rig already feeds ${values.to}; nothing to do\n`);
-    return 0;
-  }
+  const stopped = untilStopped();
+  if (values.lock !== undefined && !(await waitForLock(values.lock, values.to, stopped))) return 0;
   const run = randomUUID();
   const past = numberOption(values, 'past', 0) ?? PAST_SECONDS;
-  await feed(values.to, values.seed ?? run, run, past, values.lock);
+  await feed({ to: values.to, seed: values.seed ?? run, run, past, lock: values.lock, stopped });
   if (values.lock !== undefined) rmSync(values.lock, { force: true });
   return 0;
 }
 
-function feed(to: string, seed: string, run: string, past: number, lock: string | undefined): Promise<void> {
+/** What a rig is told; `stopped` resolves when it is to end. */
+interface Feeding {
+  to: string;
+  seed: string;
+  run: string;
+  past: number;
+  lock: string | undefined;
+  stopped: Promise<void>;
+}
+
+function untilStopped(): Promise<void> {
+  return new Promise((resolve) => {
+    process.once('SIGTERM', resolve);
+    process.once('SIGINT', resolve);
+  });
+}
+
+function feed({ to, seed, run, past, lock, stopped }: Feeding): Promise<void> {
   // what passes is measured monotonically, so that a step of the clock makes no step in the times
   const started = Date.now() / 1000;
   const monotonic = performance.now();
@@ -136,35 +154,72 @@ function feed(to: string, seed: string, run: string, past: number, lock: string 
   for (const [channel, frame] of framesOfDue(source.due(now()), PAST_FRAME)) producer.send(channel, frame);
   return new Promise((resolve) => {
     let timer: NodeJS.Timeout;
+    let over = false;
     const stop = () => {
+      over = true;
       clearTimeout(timer);
       producer.close().then(resolve, resolve);
     };
     const tick = () => {
+      if (over) return;
       for (const [channel, frame] of framesOfDue(source.due(now()), PAST_FRAME))
         producer.send(channel, frame);
       if (lock !== undefined) refreshLock(lock);
       if (!connected && now() - heardAt > GIVE_UP_SECONDS) stop();
       else timer = setTimeout(tick, 1000 * TICK_SECONDS * (0.6 + 0.8 * ticks.uniform()));
     };
-    process.once('SIGTERM', stop);
-    process.once('SIGINT', stop);
+    stopped.then(stop);
     tick();
   });
 }
 
-/** Whether this process is now the only rig that feeds the address: a killed server's rig may still be running. */
-function takeLock(file: string, to: string): boolean {
-  const mine = JSON.stringify({ to, process: process.pid });
+/**
+ * Waits until no other rig feeds the address: that of a server that was killed may have gone on, and the restarted
+ * server finds it connected again. While it lives this process only stands in for it: told to stop, it stops it; left
+ * alone by a server that was killed in its turn, it just ends.
+ *
+ * @returns false when this process is to end
+ */
+async function waitForLock(file: string, to: string, stopped: Promise<void>): Promise<boolean> {
+  let end: 'told' | 'left' | null = null;
+  const left = () => {
+    end = 'left';
+  };
+  stopped.then(() => {
+    end = 'told';
+  });
+  process.once('disconnect', left);
+  let holder = holderOf(file, to);
+  while (holder !== null && end === null) {
+    await Promise.race([stopped, sleep(1000 * LOOK_SECONDS)]);
+    const now = holderOf(file, to);
+    if (end === 'told' && now === holder) stopProcess(holder);
+    holder = now;
+  }
+  process.off('disconnect', left);
+  if (end !== null) return false;
+  writeFileSync(file, JSON.stringify({ to, process: process.pid }));
+  return true;
+}
+
+function stopProcess(id: number): void {
+  try {
+    process.kill(id, 'SIGTERM');
+  } catch {
+    // it has ended meanwhile
+  }
+}
+
+/** The process of the rig that feeds the address now, null when there is none. */
+function holderOf(file: string, to: string): number | null {
   try {
     const age = Date.now() / 1000 - statSync(file).mtimeMs / 1000;
-    const held = JSON.parse(readFileSync(file, 'utf8')) as { to: string };
-    if (age < LOCK_SECONDS && held.to === to) return false;
+    const held = JSON.parse(readFileSync(file, 'utf8')) as { to: string; process: number };
+    return age < LOCK_SECONDS && held.to === to && Number.isInteger(held.process) ? held.process : null;
   } catch {
     // no file, or none that can be read: nobody holds it
+    return null;
   }
-  writeFileSync(file, mine);
-  return true;
 }
 
 function refreshLock(file: string): void {

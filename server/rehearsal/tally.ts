@@ -28,6 +28,7 @@ export interface Tally {
   spanned: number;
 }
 
+/** A tally in which nothing has been counted. */
 export function emptyTally(): Tally {
   return {
     switches: { warned: 0, late: 0, missed: 0, blind: 0 },
