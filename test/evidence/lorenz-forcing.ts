@@ -72,7 +72,11 @@ function taskFor(seed: string, leastLead: number, horizon: number): SearchTask {
 export function runCase(leastLead: number, horizon: number): EvidenceRow[] {
   return SEEDS.map((seed) => {
     const task = taskFor(seed, leastLead, horizon);
-    return { seed, chosen: chooseSettings(task), published: judgePair(task, PUBLISHED.delays, PUBLISHED.rank) };
+    return {
+      seed,
+      chosen: chooseSettings(task),
+      published: judgePair(task, PUBLISHED.delays, PUBLISHED.rank),
+    };
   });
 }
 
