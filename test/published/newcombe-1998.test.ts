@@ -1,7 +1,7 @@
 /**
  * R. G. Newcombe (1998), "Two-sided confidence intervals for the single proportion: comparison of seven methods",
  * Statistics in Medicine 17, 857–872, Table I, Wilson score method (method 3), 95 %: seen in independent
- * transcriptions, half a unit of the last printed digit. The other rows are recomputed with base R (`prop.test`
+ * copies of the table, half a unit of the last printed digit. The other rows are recomputed with base R (`prop.test`
  * without correction), 1e-6: 4 of 20 are the data of the NIST/SEMATECH e-Handbook, section 7.2.4.2; 28 of 51 the
  * probability of detection of Finley (1884).
  */
