@@ -1,8 +1,9 @@
 import { Encoder } from 'cbor-x';
-import { bufferTime, filter, interval, merge, Subject, type Subscription } from 'rxjs';
+import { interval, type Subscription } from 'rxjs';
 import { z } from 'zod';
 import type { FeedMessage, Welcome } from '../../shared-types/feed.ts';
 import type { Warning } from '../../shared-types/warning.ts';
+import { changedKeys } from './changedKeys.ts';
 import type { Hub } from './hub.ts';
 import { createLiveColumns, type LiveColumns } from './liveColumns.ts';
 
@@ -203,22 +204,19 @@ export function createFeedSession(hub: Hub, link: FeedLink, facts: FeedFacts): F
     }
   };
 
-  const looked$ = new Subject<void>();
   const subscriptions: Subscription[] = [
     hub.news$.subscribe(tell),
-    hub.touched$
-      .pipe(
-        bufferTime(STATE_MILLISECONDS),
-        filter((keys) => keys.length > 0 || lateStates.size > 0),
-      )
-      .subscribe((keys) => sendStates(keys)),
+    hub.touched$.pipe(changedKeys(STATE_MILLISECONDS)).subscribe(sendStates),
     hub.frames$.subscribe(({ channel, times, t0, dt, values }) =>
       addLive('signal', channel, (live) => live.add(times, t0, dt, values)),
     ),
     hub.traces$.subscribe(({ watch, times, values }) =>
       addLive('trace', watch, (live) => live.add(times, 0, 0, values)),
     ),
-    merge(interval(DRAWING_MILLISECONDS), looked$).subscribe(sendDrawing),
+    interval(DRAWING_MILLISECONDS).subscribe(() => {
+      if (lateStates.size > 0) sendStates([]);
+      sendDrawing();
+    }),
     interval(1000).subscribe(() => send({ kind: 'beat', serverTime: hub.now().server })),
   ];
 
@@ -251,7 +249,6 @@ export function createFeedSession(hub: Hub, link: FeedLink, facts: FeedFacts): F
       stale.clear();
       for (const name of hub.channels.names()) void load('signal', name);
       for (const { watch } of hub.watches.states()) void load('trace', watch);
-      looked$.next();
     },
     end() {
       ended = true;

@@ -147,6 +147,6 @@ export function swingModel(name = 'swing'): Model {
 
 export const swingModelJson = (): string => modelToJson(swingModel());
 
-/** The swing: sample i at 0.1 i seconds. */
+/** The swing: sample i at 0.1 i seconds is -2 cos(0.05 i). */
 export const swing = (from: number, count: number): Float64Array =>
-  Float64Array.from({ length: count }, (_, i) => 2 * Math.sin((from + i) * 0.05));
+  Float64Array.from({ length: count }, (_, i) => -2 * Math.cos((from + i) * 0.05));
