@@ -49,6 +49,12 @@ export async function main(argv: string[]): Promise<number> {
   return command(rest);
 }
 
+// whoever reads the output may stop early: `foreshift rehearse … | head`
+process.stdout.on('error', (error: NodeJS.ErrnoException) => {
+  if (error.code !== 'EPIPE') throw error;
+  process.exit(0);
+});
+
 if (process.argv[1] && import.meta.url === pathToFileURL(await realPath(process.argv[1])).href)
   process.exitCode = await main(process.argv.slice(2));
 

@@ -47,19 +47,18 @@ export async function prepareDemo(dataFolder: string): Promise<PreparedDemo> {
   await mkdir(folder, { recursive: true });
   const prepared: PreparedDemo = { models: [], watches: [], recordings: [] };
   for (const { channel } of STAND_LOOPS) {
-    const recording = join(folder, `${channel}.csv`);
-    const file = join(folder, `${channel}.model.json`);
+    const recording = join(folder, `${fileName(channel)}.csv`);
+    const file = join(folder, `${fileName(channel)}.model.json`);
     const json = (await earlier(file, recording)) ?? (await makeModel(channel, recording, file));
     const name = `demo ${channel}`;
     prepared.models.push({ name, json, model: modelFromJson(json), file });
-    prepared.watches.push({ name: watchName(channel), model: name, channels: [channel], reaction: REACTION });
+    prepared.watches.push({ name: channel, model: name, channels: [channel], reaction: REACTION });
     prepared.recordings.push(recording);
   }
   return prepared;
 }
 
-const watchName = (channel: string): string =>
-  channel.replace('loop-', 'Loop ').replace(/.$/, (last) => last.toUpperCase());
+const fileName = (channel: string): string => channel.toLowerCase().replaceAll(' ', '-');
 
 /** The model of an earlier start, null when there is none that can be used. */
 async function earlier(file: string, recording: string): Promise<string | null> {

@@ -1,7 +1,7 @@
 /**
  * The demo's producer: a process of its own that speaks the public ingest protocol, as a reader's own rig would.
  *
- *     node dist/server/commands/standRig.js --to ws://127.0.0.1:4717/ingest [--seed NAME] [--past SECONDS] [--lock FILE]
+ *     node dist/server/commands/standRig.js --to ws://127.0.0.1:4717/ingest [--seed NAME] [--past SECONDS] [--after TIME] [--lock FILE]
  */
 import { randomUUID } from 'node:crypto';
 import { readFileSync, rmSync, statSync, utimesSync, writeFileSync } from 'node:fs';
@@ -29,10 +29,10 @@ const LOCK_SECONDS = 15;
 const LOOK_SECONDS = 2;
 
 const ROOM = {
-  channel: 'room-humidity',
+  channel: 'Room humidity',
   unit: '% RH',
   label:
-    'Room humidity: real readings of 9 May 2010, one every 5 s, played 10 times faster (mote 1, Suthaharan et al. 2010)',
+    'real readings of 9 May 2010, one every 5 s, played 10 times faster (mote 1, Suthaharan et al. 2010)',
   interval: PLAYED_INTERVAL,
   low: 0,
   high: 100,
@@ -86,6 +86,15 @@ export function* framesOfDue(due: readonly Due[], most: number): Generator<[stri
   }
 }
 
+/** What is due, less the samples up to `after` (Unix seconds). */
+export function newerThan(due: readonly Due[], after: number): Due[] {
+  return due.map(({ channel, times, values }) => {
+    const first = times.findIndex((time) => time > after);
+    const from = first === -1 ? times.length : first;
+    return { channel, times: times.subarray(from), values: values.subarray(from) };
+  });
+}
+
 /**
  * Sends both loops and the room's humidity to a server in real time until it is stopped or has found no server for
  * five minutes.
@@ -99,6 +108,7 @@ export async function standRig(argv: string[]): Promise<number> {
       to: { type: 'string', default: 'ws://127.0.0.1:4717/ingest' },
       seed: { type: 'string' },
       past: { type: 'string' },
+      after: { type: 'string' },
       lock: { type: 'string' },
     },
   });
@@ -106,7 +116,8 @@ export async function standRig(argv: string[]): Promise<number> {
   if (values.lock !== undefined && !(await waitForLock(values.lock, values.to, stopped))) return 0;
   const run = randomUUID();
   const past = numberOption(values, 'past', 0) ?? PAST_SECONDS;
-  await feed({ to: values.to, seed: values.seed ?? run, run, past, lock: values.lock, stopped });
+  const after = numberOption(values, 'after', 0) ?? 0;
+  await feed({ to: values.to, seed: values.seed ?? run, run, past, after, lock: values.lock, stopped });
   if (values.lock !== undefined) rmSync(values.lock, { force: true });
   return 0;
 }
@@ -117,6 +128,8 @@ interface Feeding {
   seed: string;
   run: string;
   past: number;
+  /** the server has samples up to here (Unix seconds): the past that is sent begins later */
+  after: number;
   lock: string | undefined;
   stopped: Promise<void>;
 }
@@ -128,7 +141,7 @@ function untilStopped(): Promise<void> {
   });
 }
 
-function feed({ to, seed, run, past, lock, stopped }: Feeding): Promise<void> {
+function feed({ to, seed, run, past, after, lock, stopped }: Feeding): Promise<void> {
   // what passes is measured monotonically, so that a step of the clock makes no step in the times
   const started = Date.now() / 1000;
   const monotonic = performance.now();
@@ -151,7 +164,9 @@ function feed({ to, seed, run, past, lock, stopped }: Feeding): Promise<void> {
         process.stderr.write(`the server would not use a frame: ${state.error}\n`);
     },
   });
-  for (const [channel, frame] of framesOfDue(source.due(now()), PAST_FRAME)) producer.send(channel, frame);
+  for (const [channel, frame] of framesOfDue(newerThan(source.due(now()), after), PAST_FRAME)) {
+    producer.send(channel, frame);
+  }
   return new Promise((resolve) => {
     let timer: NodeJS.Timeout;
     let over = false;

@@ -122,11 +122,19 @@ function openBrowser(address: string): void {
   opening.unref();
 }
 
-function startStand(ingest: string, lock: string): ChildProcess {
+/** Time of the newest sample of any channel, Unix seconds; 0 when there is none. */
+const newestStored = ({ hub: { channels } }: RunningServer): number =>
+  Math.max(0, ...channels.names().map((channel) => channels.newest(channel) ?? 0));
+
+function startStand(ingest: string, after: number, lock: string): ChildProcess {
   const file = import.meta.url.endsWith('.js') ? './standRig.js' : './standRig.ts';
-  return fork(fileURLToPath(new URL(file, import.meta.url)), ['--to', ingest, '--lock', lock], {
-    stdio: ['ignore', 'ignore', 'inherit', 'ipc'],
-  });
+  return fork(
+    fileURLToPath(new URL(file, import.meta.url)),
+    ['--to', ingest, '--after', String(after), '--lock', lock],
+    {
+      stdio: ['ignore', 'ignore', 'inherit', 'ipc'],
+    },
+  );
 }
 
 /** Starts a watch, unless the same model is already watching the same channels. */
@@ -217,7 +225,11 @@ async function run(argv: string[]): Promise<number> {
     const address = `http://${host}:${server.port}/`;
     const stopped = untilStopped();
     if (choice.demo)
-      stand = startStand(`ws://${host}:${server.port}/ingest`, join(choice.data, 'demo', 'rig.lock'));
+      stand = startStand(
+        `ws://${host}:${server.port}/ingest`,
+        newestStored(server),
+        join(choice.data, 'demo', 'rig.lock'),
+      );
     sayWhere(address, server, choice);
     if (choice.browser) openBrowser(address);
     await stopped;

@@ -34,8 +34,8 @@ export interface LoopDesign {
  */
 export const STAND_LOOPS: readonly LoopDesign[] = [
   {
-    channel: 'loop-a',
-    label: 'Loop A ΔT, right − left leg (simulated)',
+    channel: 'Loop A',
+    label: 'ΔT, right − left leg (simulated)',
     slope: loopSlope(REVERSING_LOOP),
     start: [1, 1, 20],
     seen: 1,
@@ -44,8 +44,8 @@ export const STAND_LOOPS: readonly LoopDesign[] = [
     disturbance: { noise: 0.03, drift: 0.05, driftSeconds: 1800, dropped: 0.003, jitter: 0.006 },
   },
   {
-    channel: 'loop-b',
-    label: 'Loop B ΔT, right − left leg (simulated)',
+    channel: 'Loop B',
+    label: 'ΔT, right − left leg (simulated)',
     slope: lorenzSlope(LORENZ_1963),
     start: [1, 1, 25],
     seen: 1,

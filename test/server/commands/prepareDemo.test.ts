@@ -11,8 +11,8 @@ const prepared = await prepareDemo(folder);
 describe('preparing the demo', () => {
   it('makes a model a loop that can be watched as it is', () => {
     expect(prepared.watches).toEqual([
-      { name: 'Loop A', model: 'demo loop-a', channels: ['loop-a'], reaction: 5 },
-      { name: 'Loop B', model: 'demo loop-b', channels: ['loop-b'], reaction: 5 },
+      { name: 'Loop A', model: 'demo Loop A', channels: ['Loop A'], reaction: 5 },
+      { name: 'Loop B', model: 'demo Loop B', channels: ['Loop B'], reaction: 5 },
     ]);
     for (const { model } of prepared.models) {
       expect(model.rule).toMatchObject({ variable: 'forcing', leastLead: 10, horizon: 20, holdOff: 10 });
@@ -36,7 +36,7 @@ describe('preparing the demo', () => {
   it('leaves the training recordings as files, with the half used named in the model', async () => {
     const text = await readFile(prepared.recordings[0]!, 'utf8');
     const lines = text.trim().split('\n');
-    expect(lines[0]).toMatch(/^time.*,loop-a.*K/);
+    expect(lines[0]).toMatch(/^time.*,Loop A.*K/);
     expect(lines.length).toBeGreaterThan(53_000);
     const [used] = prepared.models[0]!.model.provenance.recordings;
     expect(used!.to).toBeCloseTo(3 * 3600, -1);

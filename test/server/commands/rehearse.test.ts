@@ -11,7 +11,7 @@ import type { Model } from '../../../shared-types/model.ts';
 const folder = await mkdtemp(join(tmpdir(), 'foreshift-rehearse-'));
 afterAll(() => rm(folder, { recursive: true, force: true }));
 
-const series = trainingSeries('loop-b', 1);
+const series = trainingSeries('Loop B', 1);
 const csv = writeCsv({ name: '', sha256: '', channels: [{ ...series, unit: 'K' }] });
 const recording = join(folder, 'run.csv');
 await writeFile(recording, csv);
@@ -101,7 +101,7 @@ describe('foreshift rehearse', () => {
     [[recording], 'no model is named'],
     [[recording, '--model', join(folder, 'none.json')], 'cannot be read'],
     [[join(folder, 'none.csv'), '--model', model], 'there is no file'],
-    [[recording, '--model', model, '--channel', 'loop-z'], 'no channel loop-z, it has loop-b'],
+    [[recording, '--model', model, '--channel', 'Loop Z'], 'no channel Loop Z, it has Loop B'],
     [[recording, '--model', model, '--come-true', '0.8'], 'belongs to the search for settings'],
     [[recording, '--model', model, '--variable', 'best'], 'belongs to the search for settings'],
     [[recording, '--model', model, '--horizon', '5'], 'lengthen the horizon'],

@@ -14,7 +14,7 @@ describe('the demo rig', () => {
 
   it('names three channels, of which the third says what it is and where it is from', () => {
     const { channels } = createDemoSource('x', START);
-    expect(channels.map(({ channel }) => channel)).toEqual(['loop-a', 'loop-b', 'room-humidity']);
+    expect(channels.map(({ channel }) => channel)).toEqual(['Loop A', 'Loop B', 'Room humidity']);
     expect(channels[2]!.label).toMatch(/real readings.*10 times faster.*Suthaharan et al\. 2010/);
   });
 
@@ -42,7 +42,7 @@ describe('the demo rig', () => {
 
   it('plays the readings round when they are over', () => {
     const source = createDemoSource('x', START, Float64Array.of(1, 2, 3));
-    const room = source.due(START + 2).find(({ channel }) => channel === 'room-humidity')!;
+    const room = source.due(START + 2).find(({ channel }) => channel === 'Room humidity')!;
     // 1700 readings in, three to a round: 1700 mod 3 = 2
     expect([...room.values]).toEqual([3, 1, 2, 3, 1]);
     expect([...room.times].map((time) => time - START)).toEqual([0, 0.5, 1, 1.5, 2]);

@@ -14,13 +14,13 @@ function brokenHour(seed: string) {
     return !(time > 600 && time < 640) && !(time > 2900 && time < 2931.3) && !(time > 4000 && time < 4003);
   });
   const pick = (values: Float64Array) => Float64Array.from(kept, (i) => values[i]!);
-  return { channel: 'loop-a', times: pick(frame!.times), values: pick(frame!.values) };
+  return { channel: 'Loop A', times: pick(frame!.times), values: pick(frame!.values) };
 }
 
 const series = brokenHour('rehearsed');
 const task: SearchTask = {
   name: 'rehearsed',
-  channels: [{ channel: 'loop-a', unit: 'K' }],
+  channels: [{ channel: 'Loop A', unit: 'K' }],
   recordings: [[series]],
   interval: 0.4,
   gapIntervals: 3,
@@ -47,7 +47,7 @@ const found = chooseSettings(task);
 const { model } = found;
 const settings: WatchSettings = {
   model,
-  channels: ['loop-a'],
+  channels: ['Loop A'],
   rule: model.rule,
   regime: model.regime,
   regimeChannel: model.regimeChannel,
@@ -117,8 +117,8 @@ describe('a rehearsal', () => {
     expect(() => rehearse({ ...settings, rule: null }, [[series]], options)).toThrow(
       /no watch rule.*--threshold/,
     );
-    expect(() => rehearse({ ...settings, channels: ['loop-z'] }, [[series]], options)).toThrow(
-      /no channel loop-z, it has loop-a/,
+    expect(() => rehearse({ ...settings, channels: ['Loop Z'] }, [[series]], options)).toThrow(
+      /no channel Loop Z, it has Loop A/,
     );
   });
 });

@@ -25,18 +25,18 @@ describe('the invented stand', () => {
   });
 
   it('gives other samples for another seed', () => {
-    expect(joined(createStand(1).advance(60), 'loop-a')).not.toEqual(
-      joined(createStand(2).advance(60), 'loop-a'),
+    expect(joined(createStand(1).advance(60), 'Loop A')).not.toEqual(
+      joined(createStand(2).advance(60), 'Loop A'),
     );
   });
 
   it('samples both loops in kelvin, by names and labels of its own', () => {
     const { channels } = createStand(1);
-    expect(channels.map(({ channel }) => channel)).toEqual(['loop-a', 'loop-b']);
+    expect(channels.map(({ channel }) => channel)).toEqual(['Loop A', 'Loop B']);
     for (const { unit, interval } of channels) expect([unit, interval]).toEqual(['K', STAND_INTERVAL]);
   });
 
-  it.each(['loop-a', 'loop-b'])(
+  it.each(['Loop A', 'Loop B'])(
     'reverses %s every half minute or so, with an amplitude of a few kelvin',
     (channel) => {
       const { times, values } = joined(hours, channel);
@@ -57,7 +57,7 @@ describe('the invented stand', () => {
     },
   );
 
-  it.each(['loop-a', 'loop-b'])(
+  it.each(['Loop A', 'Loop B'])(
     'loses about 0.3 %% of the samples of %s and keeps its times rising',
     (channel) => {
       const { times } = joined(hours, channel);
