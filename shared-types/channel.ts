@@ -1,11 +1,10 @@
 import { z } from 'zod';
 
 /** A channel's name: what producers, watches and addresses call it. */
-export const ChannelName = z
-  .string()
-  .regex(/^[\p{L}\p{N}][\p{L}\p{N} ._,+-]{0,79}$/u, {
-    message: 'a channel name is 1 to 80 letters, digits, spaces or any of . _ , + - and begins with a letter or digit',
-  });
+export const ChannelName = z.string().regex(/^[\p{L}\p{N}][\p{L}\p{N} ._,+-]{0,79}$/u, {
+  message:
+    'a channel name is 1 to 80 letters, digits, spaces or any of . _ , + - and begins with a letter or digit',
+});
 
 /** What a producer says of a channel when it connects. */
 export const ChannelDescription = z.object({

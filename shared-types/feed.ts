@@ -1,6 +1,6 @@
 import type { ChannelState, Columns } from './channel.ts';
-import type { WatchState } from './watch.ts';
 import type { LogEntry, SwitchEvent, Warning } from './warning.ts';
+import type { WatchState } from './watch.ts';
 
 /** WebSocket subprotocol of `/feed`: binary CBOR from the server, JSON text from the page. */
 export const FEED_PROTOCOL = 'foreshift.feed.1';

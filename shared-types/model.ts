@@ -1,5 +1,5 @@
-import type { RegimeRule, WatchRule } from './watch.ts';
 import type { Score } from './score.ts';
+import type { RegimeRule, WatchRule } from './watch.ts';
 
 /** A fitted model, in memory. Every matrix is row-major. */
 export interface Model {

@@ -8,7 +8,16 @@ export interface Interval {
 /** The score of a watch over a stretch of data. Spans are seconds, fractions 0..1. */
 export interface Score {
   switches: { total: number; warned: number; late: number; missed: number; blind: number };
-  warnings: { total: number; true: number; repeat: number; late: number; false: number; open: number; unseen: number; acted: number };
+  warnings: {
+    total: number;
+    true: number;
+    repeat: number;
+    late: number;
+    false: number;
+    open: number;
+    unseen: number;
+    acted: number;
+  };
   detection: Interval;
   cameTrue: Interval;
   falseRatio: Interval;

@@ -54,7 +54,20 @@ export interface LogEntry {
   id: number;
   /** server clock, Unix seconds */
   time: number;
-  kind: 'acknowledged' | 'shelved' | 'unshelved' | 'out of service' | 'in service' | 'gap' | 'hole' | 'refused' | 'model' | 'watch' | 'server' | 'note' | 'likeness';
+  kind:
+    | 'acknowledged'
+    | 'shelved'
+    | 'unshelved'
+    | 'out of service'
+    | 'in service'
+    | 'gap'
+    | 'hole'
+    | 'refused'
+    | 'model'
+    | 'watch'
+    | 'server'
+    | 'note'
+    | 'likeness';
   channel: string | null;
   watch: string | null;
   by: string | null;

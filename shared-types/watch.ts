@@ -7,10 +7,33 @@ const finite = z.number().finite();
 /** What counts as a switch, and when it happened. The text form is `RULE` of the commands. */
 export const RegimeRule = z.discriminatedUnion('kind', [
   z.object({ kind: z.literal('sides'), low: finite, high: finite, to: direction }),
-  z.object({ kind: z.literal('levels'), levels: z.array(finite).min(1), deadband: finite.nonnegative(), to: direction }),
-  z.object({ kind: z.literal('excursion'), level: finite, rearm: finite, gap: finite.nonnegative(), to: direction }),
-  z.object({ kind: z.literal('dip'), level: finite, rearm: finite, gap: finite.nonnegative(), to: direction }),
-  z.object({ kind: z.literal('burst'), window: finite.positive(), level: finite.positive(), rearm: finite.positive(), to: direction }),
+  z.object({
+    kind: z.literal('levels'),
+    levels: z.array(finite).min(1),
+    deadband: finite.nonnegative(),
+    to: direction,
+  }),
+  z.object({
+    kind: z.literal('excursion'),
+    level: finite,
+    rearm: finite,
+    gap: finite.nonnegative(),
+    to: direction,
+  }),
+  z.object({
+    kind: z.literal('dip'),
+    level: finite,
+    rearm: finite,
+    gap: finite.nonnegative(),
+    to: direction,
+  }),
+  z.object({
+    kind: z.literal('burst'),
+    window: finite.positive(),
+    level: finite.positive(),
+    rearm: finite.positive(),
+    to: direction,
+  }),
   z.object({ kind: z.literal('marks'), channel: ChannelName, to: direction }),
 ]);
 export type RegimeRule = z.infer<typeof RegimeRule>;
@@ -44,10 +67,26 @@ export type AlarmState =
 
 /** What a person may do to a watch. */
 export const WatchAction = z.discriminatedUnion('action', [
-  z.object({ action: z.literal('acknowledge'), upTo: z.number().int().nonnegative().optional(), by: z.string().max(80).default('') }),
-  z.object({ action: z.literal('shelve'), seconds: z.number().positive().max(7 * 86400), reason: z.string().min(1).max(500), by: z.string().max(80).default('') }),
+  z.object({
+    action: z.literal('acknowledge'),
+    upTo: z.number().int().nonnegative().optional(),
+    by: z.string().max(80).default(''),
+  }),
+  z.object({
+    action: z.literal('shelve'),
+    seconds: z
+      .number()
+      .positive()
+      .max(7 * 86400),
+    reason: z.string().min(1).max(500),
+    by: z.string().max(80).default(''),
+  }),
   z.object({ action: z.literal('unshelve'), by: z.string().max(80).default('') }),
-  z.object({ action: z.literal('take out of service'), reason: z.string().min(1).max(500), by: z.string().max(80).default('') }),
+  z.object({
+    action: z.literal('take out of service'),
+    reason: z.string().min(1).max(500),
+    by: z.string().max(80).default(''),
+  }),
   z.object({ action: z.literal('return to service'), by: z.string().max(80).default('') }),
 ]);
 export type WatchAction = z.infer<typeof WatchAction>;

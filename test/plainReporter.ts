@@ -20,7 +20,9 @@ export default class PlainReporter implements Reporter {
         }
       }
     }
-    const lines = [...leftOut].map(([file, count]) => `  ${file}: ${count} ${count === 1 ? 'test' : 'tests'}, ${reason(file)}`);
+    const lines = [...leftOut].map(
+      ([file, count]) => `  ${file}: ${count} ${count === 1 ? 'test' : 'tests'}, ${reason(file)}`,
+    );
     if (lines.length > 0) process.stdout.write(`\nLeft out:\n${lines.join('\n')}\n`);
     const strict = process.env.FORESHIFT_ALL_TESTS !== undefined;
     const failed = counts.failed + (strict ? counts.skipped : 0);
@@ -28,7 +30,9 @@ export default class PlainReporter implements Reporter {
       process.stdout.write('FORESHIFT_ALL_TESTS is set: what was left out counts as failed.\n');
       process.exitCode = 1;
     }
-    process.stdout.write(`\n${counts.passed} passed, ${failed} failed${strict || counts.skipped === 0 ? '' : `, ${counts.skipped} skipped`}\n`);
+    process.stdout.write(
+      `\n${counts.passed} passed, ${failed} failed${strict || counts.skipped === 0 ? '' : `, ${counts.skipped} skipped`}\n`,
+    );
   }
 }
 
