@@ -167,17 +167,29 @@ export function cutRuns(block: GridBlock): GridRun[] {
 }
 
 /**
- * The usual interval of recorded times: the median of the first 10,000 differences, rounded to seven digits so that
- * 0.30000000000000004 reads 0.3.
+ * The usual interval of recorded times: the mean of the differences within a tenth of their median (of the first
+ * 10,000), as the shortest decimal that the scatter of the times and their own rounding allow: 0.1, not 0.0999999.
  *
+ * @param times strictly increasing, seconds
  * @throws RangeError when there are fewer than two times
  */
 export function usualInterval(times: Float64Array): number {
-  if (times.length < 2)
+  if (times.length < 2) {
     throw new RangeError(`usualInterval: ${times.length} samples, needs at least 2; record for longer`);
+  }
   const count = Math.min(times.length - 1, 10_000);
-  const steps = new Float64Array(count);
-  for (let i = 0; i < count; i++) steps[i] = times[i + 1]! - times[i]!;
-  steps.sort();
-  return Number(steps[count >> 1]!.toPrecision(7));
+  const differences = new Float64Array(count);
+  for (let i = 0; i < count; i++) differences[i] = times[i + 1]! - times[i]!;
+  differences.sort();
+  const median = differences[count >> 1]!;
+  const usual = differences.filter((step) => Math.abs(step - median) <= 0.1 * median);
+  const mean = usual.reduce((sum, step) => sum + (step - median), 0) / usual.length + median;
+  const square = usual.reduce((sum, step) => sum + (step - mean) ** 2, 0);
+  const rounding = 2 * Math.abs(times[count]!) * Number.EPSILON;
+  const tolerance = (2 * Math.sqrt(square) + rounding) / usual.length;
+  for (let digits = 1; digits < 15; digits++) {
+    const short = Number(mean.toPrecision(digits));
+    if (Math.abs(short - mean) <= tolerance) return short;
+  }
+  return mean;
 }

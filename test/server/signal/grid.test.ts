@@ -83,8 +83,21 @@ describe('samples on a grid', () => {
     expect(gridRuns(new Float64Array(0), new Float64Array(0), 1, 3)).toEqual([]);
   });
 
-  it('reads the usual interval off jittered times and says when there is too little', () => {
+  it('reads the usual interval off times with jitter, holes and rounding', () => {
     expect(usualInterval(Float64Array.of(0, 0.1, 0.2, 0.30000000000000004, 2))).toBe(0.1);
+    expect(usualInterval(Float64Array.from({ length: 300 }, (_, i) => 1796106029.061459 + 0.1 * i))).toBe(
+      0.1,
+    );
+    expect(usualInterval(Float64Array.from({ length: 3000 }, (_, i) => 1.7e9 + i / 30))).toBeCloseTo(
+      1 / 30,
+      8,
+    );
+    const jittered = Float64Array.from({ length: 5000 }, (_, i) => 0.4 * i + 0.006 * Math.sin(12.9898 * i));
+    expect(usualInterval(jittered)).toBe(0.4);
+    expect(usualInterval(Float64Array.of(0, 3600, 7200))).toBe(3600);
+  });
+
+  it('says when there are too few times for an interval', () => {
     expect(() => usualInterval(Float64Array.of(1))).toThrow(/needs at least 2/);
   });
 
