@@ -93,14 +93,17 @@ function foldInto(
     const beta = 2 / (first * first + square);
     triangle[k * rows + k] = alpha;
     let j = k + 1;
-    for (; j + 1 < rows; j += 2)
-      reflectPair(triangle, k * rows + j, block, column, end, (j - k) * height, height, first, beta);
-    if (j < rows) reflectOne(triangle, k * rows + j, block, column, end, (j - k) * height, first, beta);
+    for (; j + 3 < rows; j += 4) {
+      reflectFour(triangle, k * rows + j, block, column, end, (j - k) * height, height, first, beta);
+    }
+    for (; j < rows; j++) {
+      reflectOne(triangle, k * rows + j, block, column, end, (j - k) * height, first, beta);
+    }
   }
 }
 
-/** Reflects two neighbouring columns; sharing the loads of the reflector is a matter of speed only. */
-function reflectPair(
+/** Reflects four neighbouring columns; sharing the loads of the reflector is a matter of speed only. */
+function reflectFour(
   triangle: Float64Array,
   at: number,
   block: Float64Array,
@@ -111,22 +114,34 @@ function reflectPair(
   first: number,
   beta: number,
 ): void {
-  const other = offset + height;
+  const offset1 = offset + height;
+  const offset2 = offset1 + height;
+  const offset3 = offset2 + height;
   let dot0 = first * triangle[at]!;
   let dot1 = first * triangle[at + 1]!;
+  let dot2 = first * triangle[at + 2]!;
+  let dot3 = first * triangle[at + 3]!;
   for (let i = column; i < end; i++) {
     const v = block[i]!;
     dot0 += v * block[i + offset]!;
-    dot1 += v * block[i + other]!;
+    dot1 += v * block[i + offset1]!;
+    dot2 += v * block[i + offset2]!;
+    dot3 += v * block[i + offset3]!;
   }
-  const share0 = beta * dot0;
-  const share1 = beta * dot1;
-  triangle[at] = triangle[at]! - share0 * first;
-  triangle[at + 1] = triangle[at + 1]! - share1 * first;
+  dot0 *= beta;
+  dot1 *= beta;
+  dot2 *= beta;
+  dot3 *= beta;
+  triangle[at] = triangle[at]! - dot0 * first;
+  triangle[at + 1] = triangle[at + 1]! - dot1 * first;
+  triangle[at + 2] = triangle[at + 2]! - dot2 * first;
+  triangle[at + 3] = triangle[at + 3]! - dot3 * first;
   for (let i = column; i < end; i++) {
     const v = block[i]!;
-    block[i + offset] = block[i + offset]! - share0 * v;
-    block[i + other] = block[i + other]! - share1 * v;
+    block[i + offset] = block[i + offset]! - dot0 * v;
+    block[i + offset1] = block[i + offset1]! - dot1 * v;
+    block[i + offset2] = block[i + offset2]! - dot2 * v;
+    block[i + offset3] = block[i + offset3]! - dot3 * v;
   }
 }
 
