@@ -3,15 +3,16 @@ import type { Score } from '../../shared-types/score.ts';
 import type { RegimeRule, WatchRule } from '../../shared-types/watch.ts';
 import { fitModel } from '../model/fit.ts';
 import { InputError } from '../signal/inputError.ts';
-import type { GradingSpans, Stretch } from '../watch/grading.ts';
-import { steppedRule, toSteps } from '../watch/watchRule.ts';
+import { steppedRule } from '../watch/watchRule.ts';
+import { cutBefore, sightOf, spansOf, stepsOfTrace } from './cut.ts';
 import { type GriddedRecording, gridRecording } from './gridded.ts';
 import { judgedFromTimes, scoredFromTime } from './parts.ts';
 import type { RecordedSeries } from './playback.ts';
-import { type RecordToScore, scoreRecords, toStretch } from './score.ts';
+import { type RecordToScore, scoreRecords } from './score.ts';
 import {
   type Ceiling,
   choosePoint,
+  createTried,
   type OperatingPoint,
   type RuleWishes,
   sweepThresholds,
@@ -51,7 +52,7 @@ export function chooseThreshold(
   const settings = { ...wishes, channels, interval, gapIntervals };
   const tried = recordings.map((series) => {
     const gridded = gridRecording(series, settings);
-    return tuningPart(gridded, traceOf(model, gridded, 'forcing'), gridded.end + interval, wishes);
+    return triedOf(model, gridded, wishes);
   });
   const chosen = choosePoint(sweepThresholds(tried, wishes, interval), ceiling);
   return chosen === null ? null : { rule: chosen.point.rule, ...chosen };
@@ -125,6 +126,8 @@ export function judgePair(task: SearchTask, delays: number, rank: number): Found
 
 interface Parted {
   gridded: GriddedRecording;
+  /** null: none of it is for tuning */
+  tuning: GriddedRecording | null;
   /** seconds */
   judgedFrom: number;
 }
@@ -136,55 +139,30 @@ function partRecordings(task: SearchTask): Parted[] {
     gridRecording(series, { ...wishes, channels, interval, gapIntervals }),
   );
   const judgedFrom = judgedFromTimes(gridded, tunePart);
-  return gridded.map((one, i) => ({ gridded: one, judgedFrom: judgedFrom[i]! }));
+  return gridded.map((one, i) => ({
+    gridded: one,
+    tuning: cutBefore(one, judgedFrom[i]!),
+    judgedFrom: judgedFrom[i]!,
+  }));
 }
 
 function fitTuningPart(task: SearchTask, parted: readonly Parted[], delays: number, rank: number): Model {
-  const runs = parted.flatMap(({ gridded, judgedFrom }) =>
-    gridded.runs.map((run) => {
-      const length = Math.max(
-        0,
-        Math.min(run.newest.length, Math.ceil((judgedFrom - run.start) / task.interval)),
-      );
-      return run.values.map((values) => values.subarray(0, length));
-    }),
-  );
+  const runs = parted.flatMap(({ tuning }) => tuning?.runs.map(({ values }) => values) ?? []);
   const { name, channels, center, gapIntervals } = task;
   const long = runs.filter((run) => run[0]!.length >= delays);
   return fitModel(long, task.interval, { name, channels, delays, rank, center, gapIntervals });
 }
 
 function sweepModel(task: SearchTask, parted: readonly Parted[], model: Model): OperatingPoint[] {
-  const tried = parted
-    .filter(({ gridded, judgedFrom }) => judgedFrom > gridded.start)
-    .map(({ gridded, judgedFrom }) =>
-      tuningPart(gridded, traceOf(model, gridded, 'forcing'), judgedFrom, task.wishes),
-    );
+  const tried = parted.flatMap(({ tuning }) =>
+    tuning === null ? [] : [triedOf(model, tuning, task.wishes)],
+  );
   return sweepThresholds(tried, task.wishes, task.interval);
 }
 
-/** The steps of a recording before `until` (seconds), as if it ended there. */
-function tuningPart(gridded: GriddedRecording, trace: Trace, until: number, wishes: RuleWishes): Tried {
-  const { start, interval } = gridded;
-  const end = Math.min(gridded.end, start + (Math.ceil((until - start) / interval) - 1) * interval);
-  const switches = gridded.switches.map(({ at }) => at).filter((at) => at <= end);
-  const record = {
-    start,
-    end,
-    known: end,
-    scoredFrom: start,
-    switches,
-    warnings: [],
-    unseen: gridded.unseen,
-  };
-  return {
-    trace,
-    steps: toStretch({ ...record, sight: sightOf(gridded, trace) }, spansOf(wishes, interval)),
-  };
-}
-
-function spansOf({ leastLead, horizon }: RuleWishes, interval: number): GradingSpans {
-  return { interval, leastLead: toSteps(leastLead, interval), horizon: toSteps(horizon, interval) };
+function triedOf(model: Model, gridded: GriddedRecording, wishes: RuleWishes): Tried {
+  const trace = traceOf(model, gridded, 'forcing');
+  return createTried(trace, stepsOfTrace(gridded, trace, spansOf(wishes, gridded.interval)));
 }
 
 /** Scores a rule on the judged parts; what went before still covers and repeats. */
@@ -220,18 +198,6 @@ export function recordOf(
     sight: sightOf(gridded, trace),
     unseen: gridded.unseen,
   };
-}
-
-/** Grid times of the first and last step of every stretch with a full window. */
-function sightOf({ runs, interval }: GriddedRecording, { value }: Trace): Stretch[] {
-  const sight: Stretch[] = [];
-  for (const { start, firstStep, newest } of runs) {
-    let first = 0;
-    while (first < newest.length && Number.isNaN(value[firstStep + first]!)) first++;
-    if (first === newest.length) continue;
-    sight.push({ from: start + first * interval, to: start + (newest.length - 1) * interval });
-  }
-  return sight;
 }
 
 function bestPair(pairs: readonly TriedPair[], ceiling: Ceiling | null): TriedPair {

@@ -38,6 +38,20 @@ export function emptyTally(): Tally {
   };
 }
 
+/** Adds `sign` times another tally to `tally`. */
+export function mergeTally(tally: Tally, other: Tally, sign: 1 | -1 = 1): void {
+  for (const key of Object.keys(tally.switches) as (keyof Tally['switches'])[])
+    tally.switches[key] += sign * other.switches[key];
+  for (const key of Object.keys(tally.warnings) as (keyof Tally['warnings'])[])
+    tally.warnings[key] += sign * other.warnings[key];
+  tally.watched += sign * other.watched;
+  tally.spanned += sign * other.spanned;
+}
+
+/** Warnings counted, whatever became of them. */
+export const warningsOf = ({ warnings }: Tally): number =>
+  warnings.true + warnings.repeat + warnings.late + warnings.false + warnings.open + warnings.unseen;
+
 /**
  * Counts outcomes, adding to `tally`: one pass over switches and warnings, whatever the length of the recording.
  *

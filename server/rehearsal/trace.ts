@@ -7,53 +7,91 @@ import type { GriddedRecording } from './gridded.ts';
 /** Steps in a block of the trace's summary. */
 const BLOCK = 32;
 
-/** The watched variable over a recording, one value a grid step from the recording's start. */
-export interface Trace {
-  /** NaN where the window was not full */
-  value: Float64Array;
-  /** grid time, seconds; only where the window was full */
+/** Windows projected at a time. */
+const PROJECTED = 4096;
+
+/** Times of a recording's grid steps, one entry a step from the recording's start; zero within gaps. */
+export interface Places {
+  /** grid time, seconds */
   time: Float64Array;
-  /** the newest raw sample that each value needed, where a warning made of it is stamped: whole step, seconds */
+  /** the newest raw sample that each step needed, where a warning made of it is stamped: whole step, seconds */
   stamp: Int32Array;
   at: Float64Array;
+}
+
+/** The watched variable over a recording, one value a grid step from the recording's start. */
+export interface Trace extends Places {
+  /** NaN where the window was not full */
+  value: Float64Array;
   /** least and greatest value of each block of 32 steps; −∞ and ∞ where one of them is NaN */
   low: Float64Array;
   high: Float64Array;
 }
 
+/** The times of a recording's steps; all its traces share them. */
+export function placesOf({ interval, start, runs }: GriddedRecording): Places {
+  const last = runs.at(-1)!;
+  const count = last.firstStep + last.newest.length;
+  const places = {
+    time: new Float64Array(count),
+    stamp: new Int32Array(count),
+    at: new Float64Array(count),
+  };
+  for (const run of runs) {
+    for (let i = 0; i < run.newest.length; i++) {
+      const step = run.firstStep + i;
+      places.time[step] = run.start + i * interval;
+      places.at[step] = run.newest[i]!;
+      places.stamp[step] = Math.round((run.newest[i]! - start) / interval);
+    }
+  }
+  return places;
+}
+
+/** What of a model a trace needs. */
+export type Projected = Pick<Model, 'coordinates' | 'delays' | 'rank'> & {
+  channels: readonly { mean: number }[];
+};
+
 /**
  * The watched variable as a live watch computes it: |forcing|, or the level of the first channel, wherever the
  * model's window is full.
  */
-export function traceOf(model: Model, recording: GriddedRecording, variable: Variable): Trace {
-  const { interval, start, runs } = recording;
+export function traceOf(
+  model: Projected,
+  recording: GriddedRecording,
+  variable: Variable,
+  places = placesOf(recording),
+): Trace {
   const { delays, rank } = model;
   const projection = createProjection(model.coordinates, model.channels.length, delays, rank);
-  const last = runs.at(-1)!;
-  const count = last.firstStep + last.newest.length;
-  const value = new Float64Array(count).fill(Number.NaN);
-  const time = new Float64Array(count);
-  const stamp = new Int32Array(count);
-  const at = new Float64Array(count);
-  for (const run of runs) {
-    const length = run.newest.length;
-    if (length < delays) continue;
-    const windows = length - delays + 1;
-    const out = new Float64Array(variable === 'forcing' ? windows * rank : 0);
-    if (variable === 'forcing') {
-      const lines = run.values.map((values, c) => values.map((sample) => sample - model.channels[c]!.mean));
-      projectInto(projection, lines, delays - 1, windows, out, rank - 1);
+  const value = new Float64Array(places.time.length).fill(Number.NaN);
+  for (const run of recording.runs) {
+    const windows = run.newest.length - delays + 1;
+    if (windows < 1) continue;
+    const first = run.firstStep + delays - 1;
+    if (variable === 'level') {
+      value.set(run.values[0]!.subarray(delays - 1), first);
+      continue;
     }
-    for (let i = 0; i < windows; i++) {
-      const step = run.firstStep + delays - 1 + i;
-      value[step] =
-        variable === 'forcing' ? Math.abs(out[i * rank + rank - 1]!) : run.values[0]![delays - 1 + i]!;
-      time[step] = run.start + (delays - 1 + i) * interval;
-      at[step] = run.newest[delays - 1 + i]!;
-      stamp[step] = Math.round((at[step]! - start) / interval);
+    const lines = run.values.map((values, c) => {
+      const { mean } = model.channels[c]!;
+      return values.map((sample) => sample - mean);
+    });
+    // in blocks, so that the coordinates before the last one take no room
+    const out = new Float64Array(PROJECTED * rank);
+    for (let i = 0; i < windows; i += PROJECTED) {
+      const count = Math.min(PROJECTED, windows - i);
+      projectInto(projection, lines, delays - 1 + i, count, out, rank - 1);
+      for (let j = 0; j < count; j++) value[first + i + j] = Math.abs(out[j * rank + rank - 1]!);
     }
   }
-  return { value, time, stamp, at, ...summaryOf(value) };
+  return withSummary(value, places);
+}
+
+/** A trace of any variable: one value a step, NaN where it is not known. */
+export function withSummary(value: Float64Array, places: Places): Trace {
+  return { value, ...places, ...summaryOf(value) };
 }
 
 function summaryOf(value: Float64Array): { low: Float64Array; high: Float64Array } {

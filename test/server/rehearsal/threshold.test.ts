@@ -8,6 +8,7 @@ function point(threshold: number, given: Partial<OperatingPoint>): OperatingPoin
   return {
     rule: ruleOfWishes(wishes, threshold),
     tally: emptyTally(),
+    folds: [],
     warnings: 10,
     skill: 0.5,
     detection: 0.9,

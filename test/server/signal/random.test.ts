@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import { createRandom, seedFromName, seedWords, xoshiro128 } from '../../../server/rigs/random.ts';
+import { createRandom, seedFromName, seedWords, xoshiro128 } from '../../../server/signal/random.ts';
 
 /** xoshiro128** in integers of any size: slow, and obvious beside the paper's C code. */
 function slowXoshiro(seed: bigint[]): () => number {
