@@ -1,6 +1,5 @@
 import type { Warning } from '../../shared-types/warning.ts';
 import { element, mark } from '../dom.ts';
-import { spanText } from '../words.ts';
 import { timeStep } from './ticks.ts';
 import type { StripView } from './view.ts';
 
@@ -44,7 +43,7 @@ export function createAhead(): Ahead {
       ruled = key;
       const made: HTMLElement[] = [];
       for (let at = tickStep; at * perSecond < width - 26; at += tickStep) {
-        const tick = element('span', 'aheadTick', element('span', '', `+${spanText(at)}`));
+        const tick = element('span', 'aheadTick', element('span', '', `+${tickText(at, tickStep)}`));
         tick.style.transform = `translateX(${Math.round(at * perSecond)}px)`;
         if (at * perSecond > 34) made.push(tick);
       }
@@ -91,4 +90,11 @@ function place(span: Span, warning: Warning, view: StripView, left: number, perS
 /** Seconds between the labels of a plot of some width that looks so far back. */
 export function tickStepFor(seconds: number, width: number): number {
   return timeStep(seconds, Math.max(2, Math.floor(width / 120)));
+}
+
+/** A distance from now at a tick: "40 s", "5 min", "2 h", in the unit that suits the step between ticks. */
+export function tickText(seconds: number, step: number): string {
+  if (step >= 3600) return `${Number((seconds / 3600).toFixed(1))} h`;
+  if (step >= 60) return `${Number((seconds / 60).toFixed(1))} min`;
+  return `${step >= 1 ? Math.round(seconds) : Number(seconds.toFixed(2))} s`;
 }

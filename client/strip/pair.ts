@@ -3,8 +3,8 @@ import type { WatchState } from '../../shared-types/watch.ts';
 import { element } from '../dom.ts';
 import { secondRegime } from '../regimes.ts';
 import { thresholdText } from '../warningWords.ts';
-import { clockText, numberText, spanText } from '../words.ts';
-import { tickStepFor } from './ahead.ts';
+import { clockText, numberText } from '../words.ts';
+import { tickStepFor, tickText } from './ahead.ts';
 import { ink } from './ink.ts';
 import { beyondLevel, carets, dashedLevel, hatchStretches, wedges } from './marks.ts';
 import { CARET_ROOM, createPanel, type Panel, type PanelOptions, TIME_ROOM, WEDGE_ROOM } from './panel.ts';
@@ -176,7 +176,7 @@ function traceLabels(viewNow: () => StripView | null): Pick<PanelOptions, 'value
   return {
     valueTicks: (low, high) => {
       const view = viewNow();
-      return view?.watch?.rule ? levelsOf(view) : valueTicks(low, high, 2);
+      return view?.watch?.rule ? levelsOf(view) : valueTicks(low, high, true);
     },
     valueLabels: (ticks) => {
       const view = viewNow();
@@ -209,10 +209,6 @@ function timeTicks(view: StripView | null, area: number, from: number, to: numbe
 function timeLabels(view: StripView | null, ticks: number[]): string[] {
   if (view === null) return ticks.map(() => '');
   const step = ticks.length > 1 ? ticks[1]! - ticks[0]! : 1;
-  if (view.page.zoom === null) return ticks.map((tick) => `−${spanText(tidied(view.to - tick, step))}`);
+  if (view.page.zoom === null) return ticks.map((tick) => `−${tickText(view.to - tick, step)}`);
   return ticks.map((tick) => clockText(tick, step < 1 ? 1 : 0));
-}
-
-function tidied(ago: number, step: number): number {
-  return step >= 1 ? Math.round(ago) : Number(ago.toFixed(2));
 }

@@ -91,9 +91,6 @@ function sayBadge(badge: HTMLElement, channel: ChannelState, watch: WatchState |
 
 function ruleText(watch: WatchState, unit: string): string {
   if (watch.rule === null) return 'no watch rule';
-  const { threshold, rearm, direction, variable } = watch.rule;
-  const away = direction === 'falling' ? 'below' : 'above';
-  const back = direction === 'falling' ? 'above' : 'below';
-  const warns = `warns ${away} ${thresholdText(threshold, variable, unit)}`;
-  return `${warns}, re-arms ${back} ${thresholdText(rearm, variable, unit)}`;
+  const { threshold, direction, variable } = watch.rule;
+  return `warns ${direction === 'falling' ? 'below' : 'above'} ${thresholdText(threshold, variable, unit)}`;
 }

@@ -27,6 +27,9 @@ export interface Strip {
   destroy(): void;
 }
 
+/** Room the words right of now need beside a span, CSS pixels. */
+const WORDS_WIDTH = 236;
+
 /** Creates a strip; it is drawn once it has a size. */
 export function createStrip(key: StripKey, actions: StripActions): Strip {
   const side = createSide();
@@ -71,11 +74,10 @@ export function createStrip(key: StripKey, actions: StripActions): Strip {
       markStance(root, view);
       spoken.update(view);
       say(veil, veilText(view));
-      const end = (view.watch?.rule?.horizon ?? 0) * perSecond(view);
-      root.style.setProperty(
-        '--words-left',
-        `${Math.round(Math.max(16, Math.min(end + 14, aheadWidth - 236)))}px`,
-      );
+      const end = (view.watch?.rule?.horizon ?? 0) * perSecond(view) + 14;
+      const rightmost = aheadWidth - WORDS_WIDTH;
+      root.style.setProperty('--words-left', `${Math.round(Math.max(16, Math.min(end, rightmost)))}px`);
+      mark(root, 'data-crowded', end > rightmost && view.open.length > 0 ? 'yes' : null);
       ahead.ruleOff(perSecond(view), aheadWidth, tickStepFor(view.page.look.seconds, area()));
       if (view.page.monotonic - summarised > 5) {
         summarised = view.page.monotonic;

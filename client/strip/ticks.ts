@@ -17,12 +17,14 @@ export function timeStep(span: number, most: number): number {
   return STEPS_OF_TIME.find((step) => step >= rough) ?? tidyStep(span / 86400, most) * 86400;
 }
 
-/** Two to four tidy values within [low, high], a fifth of the way from its ends where possible. */
-export function valueTicks(low: number, high: number, most = 3): number[] {
-  const step = tidyStep(high - low, most);
-  const ticks: number[] = [];
-  for (let k = Math.ceil(low / step); k * step <= high; k++) ticks.push(Number((k * step).toPrecision(12)));
-  return ticks;
+/** At least three tidy values within [low, high] (two when `few`), as far apart as that allows. */
+export function valueTicks(low: number, high: number, few = false): number[] {
+  for (let most = 2; ; most++) {
+    const step = tidyStep(high - low, most);
+    const ticks: number[] = [];
+    for (let k = Math.ceil(low / step); k * step <= high; k++) ticks.push(Number((k * step).toPrecision(12)));
+    if (ticks.length >= (few ? 2 : 3) || most > 8) return ticks;
+  }
 }
 
 /**

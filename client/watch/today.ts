@@ -16,7 +16,7 @@ export function createToday(): Today {
   const since = element('h2', 'since');
   const sentence = element('p', 'sentence');
   const body = element('tbody');
-  const heads = ['Time', 'Channel', 'What became of it', 'Seen to', 'Span or lead'].map((text) => {
+  const heads = ['Time', 'Channel', 'What became of it', 'Acknowledged', 'Span or lead'].map((text) => {
     const head = element('th', '', text);
     head.scope = 'col';
     return head;
