@@ -34,7 +34,18 @@ export interface Model {
   switchWord: string;
   validity: ValidityLimits | null;
   score: Score | null;
+  /** what other thresholds would have done on the judged part, in ascending strictness; absent in older files */
+  operating?: OperatingPoint[];
   provenance: Provenance;
+}
+
+/** A threshold with its re-arm level and what it did in a rehearsal; null where nothing was counted. */
+export interface OperatingPoint {
+  threshold: number;
+  rearm: number;
+  falsePerHour: number | null;
+  detection: number | null;
+  cameTrue: number | null;
 }
 
 export interface Diagnostics {

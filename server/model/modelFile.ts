@@ -112,7 +112,23 @@ function assemble(document: Document): Model {
     validity:
       document.validity === null ? null : (part(document, 'validity') as unknown as Model['validity']),
     score: document.score === null ? null : (part(document, 'score') as unknown as Model['score']),
+    ...operatingOf(document),
     provenance: part(document, 'provenance') as unknown as Model['provenance'],
+  };
+}
+
+/** Operating points came later than version 1: files without them stay as they are. */
+function operatingOf(document: Document): Pick<Model, 'operating'> {
+  if (document.operating === undefined) return {};
+  const orNull = (entry: Document, key: string) => (entry[key] === null ? null : number(entry, key));
+  return {
+    operating: list(document, 'operating').map((entry) => ({
+      threshold: number(entry, 'threshold'),
+      rearm: number(entry, 'rearm'),
+      falsePerHour: orNull(entry, 'falsePerHour'),
+      detection: orNull(entry, 'detection'),
+      cameTrue: orNull(entry, 'cameTrue'),
+    })),
   };
 }
 

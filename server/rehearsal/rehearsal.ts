@@ -1,17 +1,204 @@
+import type { Model } from '../../shared-types/model.ts';
 import type { RehearsalResult } from '../../shared-types/rehearsal.ts';
+import { modelToJson } from '../model/modelFile.ts';
+import { InputError } from '../signal/inputError.ts';
+import { createRandom } from '../signal/random.ts';
+import { tuneBaselines } from './baselineContenders.ts';
+import { compactOf, perfectOf, scoreChosen, tableOf } from './chosenTable.ts';
+import { foldStarts } from './folds.ts';
+import { judgeTuned, type Verdictable } from './judge.ts';
+import { perfectSkill } from './perfect.ts';
+import { type Prepared, prepareTask } from './prepare.ts';
+import { overlapsJudged, provenanceOf } from './provenance.ts';
+import { contenderOf, rivalOf, sentenceOf, watchedWords } from './rehearsalWords.ts';
+import { givenModel, type Settled, searchSettings } from './settle.ts';
 import type { RehearsalTask } from './task.ts';
+import type { Ceiling } from './threshold.ts';
+import { traceOf } from './trace.ts';
+import { createGround, type Ground, type Tuned, triedOn } from './tune.ts';
+import { levelSignals } from './variables.ts';
+import { verdictOf } from './verdict.ts';
+import { switchWordOf } from './words.ts';
 
 export type { RehearsalTask, TaskRecording, TaskSeries } from './task.ts';
+
+type Progress = (done: number, doing: string) => void;
 
 /**
  * Rehearses: settings are searched for on the tuning part, judged on the rest beside plain baselines, and summed up in
  * a verdict. `seconds` of the result is 0: who calls knows the clock.
  *
  * @param progress told the share of the work that is done, 0..1, and in words what is being done
+ * @throws InputError in one sentence when the recordings and the request do not go together
  */
-export function runRehearsal(
-  _task: RehearsalTask,
-  _progress: (done: number, doing: string) => void = () => {},
+export function runRehearsal(task: RehearsalTask, progress: Progress = () => {}): RehearsalResult {
+  progress(0, 'putting the recordings on their grid');
+  const prepared = prepareTask(task);
+  const runs = prepared.tuning.flatMap((one) => one.runs.map(({ values }) => values));
+  const ground = tuningGround(task, prepared);
+  checkOverlap(prepared, ground);
+  const searched =
+    task.model == null
+      ? searchSettings(task, prepared, ground, runs, within(progress, 0.05, 0.6))
+      : givenModel(task.model, ground);
+  const baselines = tuneBaselines(prepared, ground, runs, within(progress, 0.6, 0.75));
+  progress(0.75, 'judging the variables and the baselines');
+  return judgeAndReport(task, prepared, ground, searched, baselines, within(progress, 0.75, 1));
+}
+
+function within(progress: Progress, from: number, to: number): Progress {
+  return (done, doing) => progress(from + done * (to - from), doing);
+}
+
+function tuningGround({ request }: RehearsalTask, { tuning, spans }: Prepared): Ground {
+  const { falsePerHour, cameTrue } = request.ceiling;
+  const ceiling: Ceiling | null = falsePerHour === null && cameTrue === null ? null : request.ceiling;
+  return createGround(
+    tuning,
+    foldStarts(tuning),
+    tuning.map(({ start }) => start),
+    { spans, asked: request, ceiling },
+  );
+}
+
+/** Below this skill of a perfect warner every span covers some switch. */
+const CROWDED = 0.05;
+
+function checkOverlap({ spans, regime }: Prepared, ground: Ground): void {
+  const channels = ground.recordings[0]!.runs[0]!.values.length;
+  const [anything] = levelSignals(levelOnly(channels));
+  const steps = triedOn(ground, anything!).map((one) => one.steps);
+  const perfect = perfectSkill(steps);
+  if (perfect === null || perfect >= CROWDED) return;
+  const { horizon, interval } = spans;
+  throw new InputError(
+    'EVENTS_OVERLAP',
+    `the ${regime.kind} rule finds switches so close together that the spans of their warnings overlap all the time (horizon ${Number((horizon * interval).toPrecision(4))} s), expected a horizon shorter than the usual time between switches; shorten the horizon, or choose a rule with fewer switches`,
+  );
+}
+
+/** A stand-in for a model of which only the level is watched, with a window of one sample. */
+const levelOnly = (channels: number) => ({
+  coordinates: new Float64Array(channels),
+  delays: 1,
+  rank: 1,
+  channels: Array.from({ length: channels }, () => ({ mean: 0 })),
+});
+
+function judgeAndReport(
+  task: RehearsalTask,
+  prepared: Prepared,
+  ground: Ground,
+  settled: Settled,
+  baselines: readonly Tuned[],
+  progress: Progress,
 ): RehearsalResult {
-  throw new Error('runRehearsal is not finished; nothing was rehearsed');
+  const { request } = task;
+  const { recordings, judgedFrom, regime, regimeChannel } = prepared;
+  const { chosen, rule } = settled;
+  const word = settled.model.switchWord === 'switch' ? switchWordOf(regime) : settled.model.switchWord;
+  const judgedGround = judgingGround(prepared, ground);
+  const judged = [chosen, ...settled.others, ...baselines].map((one, i, { length }) => {
+    progress((0.6 * i) / length, `judging: ${one.signal.name}`);
+    return judgeTuned(judgedGround, one);
+  });
+  const traces = recordings.map((one) => traceOf(settled.model, one, rule.variable));
+  const score = scoreChosen(task, prepared, traces, rule);
+  progress(0.65, 'the table of operating points');
+  const { table, chosenRow, plainRow } = tableOf(task, prepared, ground, settled, traces);
+  table.rows[chosenRow]!.score = score;
+  const unit = prepared.channels[0]!.unit;
+  const rival = rivalOf(
+    judged[0]!,
+    judged.slice(1).filter((one) => one.tuned.signal.name !== 'forcing'),
+    createRandom(request.seed + 1).uniform,
+  );
+  const provenance = provenanceOf(task, prepared);
+  const fittedOnJudged = task.model != null && overlapsJudged(task.model, task, prepared);
+  const watchedHours =
+    recordings.reduce((sum, { start, end }) => sum + end - start + prepared.interval, 0) / 3600;
+  const verdict = verdictOf({
+    score,
+    variable: chosen.signal.name,
+    ceiling: request.ceiling,
+    rival: rival === null ? null : { name: rival.judged.tuned.signal.name, ...rival.difference },
+    fittedOnJudged,
+    perfect: perfectOf(prepared, traces),
+    levelChosenFreely: request.variable === 'best' && task.model == null,
+    word,
+    perHour: recordings.reduce((sum, { switches }) => sum + switches.length, 0) / watchedHours,
+    judgedShare: score.watchedSeconds / 3600 / watchedHours,
+  });
+  const model: Model = {
+    ...settled.model,
+    rule,
+    regime,
+    regimeChannel,
+    switchWord: word,
+    score,
+    provenance: task.model?.provenance ?? provenance,
+    operating: compactOf(table),
+  };
+  progress(1, 'done');
+  return {
+    request,
+    sentence: sentenceOf(watchedWords(chosen, unit), score, word, rival?.judged ?? null),
+    verdict,
+    settings: {
+      ...rule,
+      delays: model.delays,
+      rank: model.rank,
+      interval: model.interval,
+      window: model.delays * model.interval,
+    },
+    score,
+    weak: settled.weak,
+    contenders: judged.map((one) => contenderOf(one, isVariable(one, chosen, request.variable), unit)),
+    pairs: settled.pairs,
+    tried: settled.tried,
+    table,
+    chosenRow,
+    plainRow,
+    recordings: recordings.map(({ start, end, interval }, i) => ({
+      name: task.recordings[i]!.name,
+      from: start,
+      to: end,
+      judgedFrom: Math.min(judgedFrom[i]!, end + interval),
+      samples: task.recordings[i]!.series.find(({ channel }) => channel === request.channels[0])!.times
+        .length,
+      sha256: task.recordings[i]!.sha256,
+    })),
+    leftOut: task.recordings.flatMap(({ leftOut }, recording) =>
+      leftOut.map((one) => ({ recording, from: one.from, to: one.to, why: one.why })),
+    ),
+    switches: recordings.flatMap(({ switches, interval }, recording) =>
+      switches.map((one) => ({
+        recording,
+        ...one,
+        part: one.at < judgedFrom[recording]! - interval / 2 ? ('tuning' as const) : ('judged' as const),
+      })),
+    ),
+    model: modelToJson(model),
+    seconds: 0,
+    program: task.program,
+    at: task.at,
+  };
+}
+
+/** The forcing and the levels are variables where they were up for choice; the level is a baseline as well. */
+function isVariable({ tuned }: Verdictable, chosen: Tuned, asked: string): boolean {
+  const { name } = tuned.signal;
+  return (
+    name === 'forcing' || name === chosen.signal.name || (name.startsWith('level ') && asked !== 'forcing')
+  );
+}
+
+function judgingGround({ recordings, scoredFrom }: Prepared, ground: Ground): Ground {
+  const kept = [...recordings.keys()].filter((i) => scoredFrom[i]! <= recordings[i]!.end);
+  return createGround(
+    kept.map((i) => recordings[i]!),
+    kept.map(() => []),
+    kept.map((i) => scoredFrom[i]!),
+    ground,
+  );
 }

@@ -25,17 +25,32 @@ export interface ScoreOptions {
   delay?: number;
 }
 
+/** What does not depend on the warnings, made once for many scores of the same records. */
+export interface PreparedScoring {
+  stretches: Steps[];
+  /** the perfect warner's skill; null where no switch counts */
+  perfect: number | null;
+}
+
+/** Readies records for being scored with many sets of warnings. */
+export function prepareScoring(records: readonly RecordToScore[], spans: GradingSpans): PreparedScoring {
+  const stretches = records.map((record) => toStretch(record, spans));
+  return { stretches, perfect: perfectSkill(stretches) };
+}
+
 /**
  * The score of a watch over recordings, from which spans never cross into each other.
  *
- * @param spans least lead, horizon and interval; the same for all recordings
+ * @param spans    least lead, horizon and interval; the same for all recordings
+ * @param prepared made of the same records, when several scores are wanted
  */
 export function scoreRecords(
   records: readonly RecordToScore[],
   spans: GradingSpans,
   options: ScoreOptions,
+  prepared = prepareScoring(records, spans),
 ): Score {
-  const stretches = records.map((record) => toStretch(record, spans));
+  const { stretches } = prepared;
   const warnings = records.map((record) => stepsOf(record.warnings, record, spans.interval));
   const { switches, issued, leads } = countOutcomes(records, spans);
   const tally = emptyTally();
@@ -64,7 +79,7 @@ export function scoreRecords(
     },
     tau,
     skill,
-    skillShare: skillShareOf(skill, perfectSkill(stretches)),
+    skillShare: skillShareOf(skill, prepared.perfect),
     pValue: options.uniform === null ? null : shiftPValue(stretches, warnings, options.uniform),
     watchedSeconds,
   };

@@ -1,0 +1,167 @@
+import type { RehearsalRequest } from '../../shared-types/rehearsal.ts';
+import type { RegimeRule } from '../../shared-types/watch.ts';
+import { usualInterval } from '../signal/grid.ts';
+import { InputError } from '../signal/inputError.ts';
+import type { GradingSpans } from '../watch/grading.ts';
+import { parseRegimeRule } from '../watch/regimeRuleText.ts';
+import { cutBefore, spansOf } from './cut.ts';
+import { type GriddedRecording, gridRecording, regimeChannelOf, seriesOf } from './gridded.ts';
+import { leftOutSeries } from './leftOut.ts';
+import { judgedFromTimes, scoredFromTime } from './parts.ts';
+import type { RehearsalTask, TaskSeries } from './task.ts';
+
+/** A rehearsal's recordings on their grid, parted into what may be chosen on and what is judged. */
+export interface Prepared {
+  interval: number;
+  gapIntervals: number;
+  channels: { channel: string; unit: string }[];
+  regime: RegimeRule;
+  regimeChannel: string | null;
+  spans: GradingSpans;
+  recordings: GriddedRecording[];
+  /** seconds: where each recording's judged part begins (infinite: nowhere), and from where it is scored */
+  judgedFrom: number[];
+  scoredFrom: number[];
+  /** the tuning parts, as if the recordings had ended there; all of them where nothing was set aside for tuning */
+  tuning: GriddedRecording[];
+  /** nothing was set aside for tuning: baselines are tuned on what is judged, in their favour */
+  hindsight: boolean;
+}
+
+/** Windows shorter than this hold no rank worth the name. */
+const SHORTEST_WINDOW = 4;
+
+/**
+ * Puts a task's recordings on the grid, finds their switches and parts them.
+ *
+ * @throws InputError in a sentence: BAD_REGIME, SPANS, NO_SUCH_CHANNEL, NO_FULL_WINDOW, NO_SWITCH, NO_SWITCH_TO_TUNE,
+ *         NO_SWITCH_TO_JUDGE
+ */
+export function prepareTask(task: RehearsalTask): Prepared {
+  const { request, model } = task;
+  const regime = readRegime(request.regime);
+  const first = seriesOf(task.recordings[0]!.series, request.channels[0]!) as TaskSeries;
+  const interval = model?.interval ?? task.interval ?? intervalOf(first);
+  const gapIntervals = model?.gapIntervals ?? task.gapIntervals ?? 3;
+  const spans = spansOf(request, interval);
+  checkSpans(request, spans);
+  const settings = {
+    channels: request.channels,
+    interval,
+    gapIntervals,
+    regime,
+    regimeChannel: request.regimeChannel,
+  };
+  const recordings = task.recordings.map((recording) => gridRecording(leftOutSeries(recording), settings));
+  checkWindows(task, recordings, model?.delays ?? SHORTEST_WINDOW);
+  const judgedFrom = judgedFromTimes(recordings, request.tunePart);
+  const scoredFrom = recordings.map((one, i) => scoredFromTime(one, judgedFrom[i]!, spans));
+  const parts = recordings.map((one, i) => cutBefore(one, judgedFrom[i]!)).filter((one) => one !== null);
+  const hindsight = parts.length === 0 || request.tunePart === 0;
+  const tuning = hindsight ? recordings : parts;
+  checkSwitches(task, recordings, tuning, scoredFrom);
+  const units = request.channels.map((channel) => ({
+    channel,
+    unit: (seriesOf(task.recordings[0]!.series, channel) as TaskSeries).unit ?? '',
+  }));
+  return {
+    interval,
+    gapIntervals,
+    channels: units,
+    regime,
+    regimeChannel: request.regimeChannel,
+    spans,
+    recordings,
+    judgedFrom,
+    scoredFrom,
+    tuning,
+    hindsight,
+  };
+}
+
+function readRegime(text: string): RegimeRule {
+  try {
+    return parseRegimeRule(text);
+  } catch (error) {
+    throw new InputError('BAD_REGIME', (error as Error).message);
+  }
+}
+
+function intervalOf({ channel, times }: TaskSeries): number {
+  if (times.length >= 2) return usualInterval(times);
+  throw new InputError(
+    'NO_FULL_WINDOW',
+    `channel ${channel} has ${times.length} samples, expected a recording of many windows; record for longer`,
+  );
+}
+
+function checkSpans({ leastLead, horizon }: RehearsalRequest, spans: GradingSpans): void {
+  if (spans.horizon > spans.leastLead) return;
+  throw new InputError(
+    'SPANS',
+    `the least lead (${leastLead} s) is not shorter than the horizon (${horizon} s) by at least one interval (${spans.interval} s), so no warning could ever come true; lengthen the horizon or shorten the least lead`,
+  );
+}
+
+function checkWindows(
+  { recordings }: RehearsalTask,
+  gridded: readonly GriddedRecording[],
+  delays: number,
+): void {
+  gridded.forEach(({ runs, interval }, i) => {
+    const longest = Math.max(...runs.map(({ newest }) => newest.length));
+    if (longest >= delays) return;
+    throw new InputError(
+      'NO_FULL_WINDOW',
+      `the recording ${recordings[i]!.name} has no full window: its longest stretch without a gap is ${longest} samples, expected at least ${delays} (${Number((delays * interval).toPrecision(3))} s); leave it out, record without gaps, or take a shorter window`,
+    );
+  });
+}
+
+function checkSwitches(
+  task: RehearsalTask,
+  recordings: readonly GriddedRecording[],
+  tuning: readonly GriddedRecording[],
+  scoredFrom: readonly number[],
+): void {
+  const { regime } = task.request;
+  const total = recordings.reduce((sum, { switches }) => sum + switches.length, 0);
+  if (total === 0) {
+    throw new InputError(
+      'NO_SWITCH',
+      `the rule ${regime} never finds a switch in these recordings${rangeWords(task)}; choose levels that the signal passes, or record until it switches`,
+    );
+  }
+  const tuned = tuning.reduce((sum, { switches }) => sum + switches.length, 0);
+  if (tuned === 0) {
+    throw new InputError(
+      'NO_SWITCH_TO_TUNE',
+      `none of the ${total} switches lies in the tuning part, expected several to choose settings by; raise --tune-part or give longer recordings`,
+    );
+  }
+  const judged = recordings.reduce(
+    (sum, { switches, interval }, i) =>
+      sum + switches.filter(({ at }) => at >= scoredFrom[i]! - interval / 2).length,
+    0,
+  );
+  if (judged === 0) {
+    throw new InputError(
+      'NO_SWITCH_TO_JUDGE',
+      `all ${total} switches lie in the tuning part or within a horizon after it, so none is left to judge, expected at least 10; lower --tune-part or give longer recordings`,
+    );
+  }
+}
+
+function rangeWords({ request, recordings }: RehearsalTask): string {
+  const channel = regimeChannelOf(readRegime(request.regime), request.regimeChannel, request.channels);
+  let low = Number.POSITIVE_INFINITY;
+  let high = Number.NEGATIVE_INFINITY;
+  for (const { series } of recordings) {
+    for (const value of seriesOf(series, channel).values) {
+      if (value < low) low = value;
+      if (value > high) high = value;
+    }
+  }
+  if (!(low <= high)) return '';
+  return ` (${channel} lies between ${Number(low.toPrecision(4))} and ${Number(high.toPrecision(4))})`;
+}

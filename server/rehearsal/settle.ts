@@ -1,0 +1,121 @@
+import type { Model } from '../../shared-types/model.ts';
+import type { WatchRule } from '../../shared-types/watch.ts';
+import { fitModel } from '../model/fit.ts';
+import { InputError } from '../signal/inputError.ts';
+import type { Manner } from './manner.ts';
+import type { Prepared } from './prepare.ts';
+import type { RehearsalTask } from './task.ts';
+import { choosePoint } from './threshold.ts';
+import { delaysToTry } from './toTry.ts';
+import { type Ground, sweep, type Tuned, thresholdsOf, triedOn } from './tune.ts';
+import {
+  chooseVariable,
+  forcingSignal,
+  levelSignals,
+  type SearchedVariables,
+  searchVariables,
+  type TunedVariable,
+  tuneLevels,
+} from './variables.ts';
+
+/** Rows of the operating table, besides the chosen one. */
+export const ROWS = 120;
+/** Delays and rank of the model that a plain level is watched with: as short a window as there is. */
+const LEVEL_DELAYS = 4;
+const LEVEL_RANK = 2;
+
+/** What is judged: the chosen variable with its model and rule, and the others beside it. */
+export interface Settled {
+  model: Model;
+  chosen: TunedVariable;
+  /** the other variables, with their own choices */
+  others: Tuned[];
+  rule: WatchRule;
+  weak: boolean;
+  pairs: SearchedVariables['pairs'];
+  tried: number;
+}
+
+/** Searches settings on the tuning part and fits the chosen window and rank to all of it. */
+export function searchSettings(
+  task: RehearsalTask,
+  prepared: Prepared,
+  ground: Ground,
+  runs: readonly (readonly Float64Array[])[],
+  progress: (done: number, doing: string) => void,
+): Settled {
+  const { request } = task;
+  const delays = delaysToTry(runs, request, prepared.spans.horizon, prepared.interval);
+  const levelDelays = request.windows === null ? LEVEL_DELAYS : Math.min(...delays);
+  const level = fitTo(prepared, runs, levelDelays, LEVEL_RANK);
+  const searched = searchVariables(ground, runs, request, delays, level, progress);
+  const chosen = chooseVariable(searched, request.variable, ground.ceiling);
+  progress(0.97, 'fitting the chosen window and rank');
+  const model = chosen.signal.name === 'forcing' ? fitTo(prepared, runs, chosen.delays, chosen.rank) : level;
+  const final = settle(ground, model, chosen, request.threshold);
+  const others = [...(searched.forcing === null ? [] : [searched.forcing]), ...searched.levels].filter(
+    (one) => one.signal.name !== chosen.signal.name,
+  );
+  const { pairs, tried } = searched;
+  return {
+    model,
+    chosen: final,
+    others,
+    rule: final.point.rule,
+    weak: final.weak,
+    pairs,
+    tried: tried + ROWS,
+  };
+}
+
+function fitTo(
+  { interval, gapIntervals, channels }: Prepared,
+  runs: readonly (readonly Float64Array[])[],
+  delays: number,
+  rank: number,
+): Model {
+  const long = runs.filter((run) => run[0]!.length >= delays);
+  const name = channels.map(({ channel }) => channel).join(', ');
+  return fitModel(long, interval, { name, channels, delays, rank, center: 'mean', gapIntervals });
+}
+
+/** The threshold of the chosen setting, on the model as it was fitted to all of the tuning part. */
+function settle(ground: Ground, model: Model, chosen: TunedVariable, held: number | null): TunedVariable {
+  const signal = signalOf(model, chosen.signal.name);
+  const tried = triedOn(ground, signal);
+  const thresholds = held === null ? thresholdsOf(signal, tried, ROWS) : [held];
+  const best = choosePoint(sweep(ground, tried, signal, chosen.manner, thresholds), ground.ceiling);
+  return best === null ? { ...chosen, signal } : { ...chosen, signal, ...best };
+}
+
+const signalOf = (model: Model, name: string) =>
+  [forcingSignal(model), ...levelSignals(model)].find((one) => one.name === name)!;
+
+/** The model's own rule, as if it had been chosen. */
+export function givenModel(model: Model, ground: Ground): Settled {
+  const rule = model.rule!;
+  const name = rule.variable === 'forcing' ? 'forcing' : `level ${rule.direction}`;
+  const signal = signalOf(model, name);
+  const manner: Manner = {
+    rearm:
+      rule.variable === 'forcing'
+        ? { kind: 'share', by: rule.rearm / rule.threshold }
+        : { kind: 'distance', by: Math.abs(rule.threshold - rule.rearm) },
+    onDelay: rule.onDelay,
+    holdOff: rule.holdOff,
+  };
+  const tried = triedOn(ground, signal);
+  const given = { ...signal, thresholds: [rule.threshold] };
+  const best = choosePoint(sweep(ground, tried, given, manner, given.thresholds), ground.ceiling);
+  if (best === null) {
+    throw new InputError(
+      'NOTHING_TO_WARN_OF',
+      'no switch of the tuning part could have been warned of; give longer recordings, another rule for the switch, or a longer horizon',
+    );
+  }
+  const point = { ...best.point, rule };
+  const { delays, rank } = model;
+  const chosen = { signal, manner, merit: point, point, weak: best.weak, delays, rank };
+  const others = tuneLevels(ground, model, null).levels.filter((one) => one.signal.name !== name);
+  return { model, chosen, others, rule, weak: best.weak, pairs: [], tried: 1 };
+}

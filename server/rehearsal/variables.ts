@@ -1,0 +1,186 @@
+import type { RehearsalRequest, TriedSetting } from '../../shared-types/rehearsal.ts';
+import { InputError } from '../signal/inputError.ts';
+import { type Forcing, forcingsOf } from './forcings.ts';
+import { bothDirections, type Signal } from './signal.ts';
+import { type Ceiling, choosePoint } from './threshold.ts';
+import { type Projected, traceOf } from './trace.ts';
+import { bestTuned, type Ground, mannersOn, type Tuned, thresholdsOf, triedOn, tune } from './tune.ts';
+
+/** A tuned variable with the window and rank that it is made of. */
+export interface TunedVariable extends Tuned {
+  delays: number;
+  rank: number;
+}
+
+/** What a search over variables found. */
+export interface SearchedVariables {
+  /** the best of each variable by what choosing it is worth; null: none with a switch that counts */
+  forcing: TunedVariable | null;
+  levels: TunedVariable[];
+  pairs: TriedSetting[];
+  /** rules tried */
+  tried: number;
+}
+
+/** Pairs whose re-arm, on-delay and hold-off are searched. */
+const REFINED = 4;
+/** Thresholds in that search. */
+const REFINED_THRESHOLDS = 32;
+
+/**
+ * Searches windows × ranks × thresholds with the usual manner (re-arm, on-delay, hold-off), then the manners of the
+ * pairs that did best, then the levels with all manners. Every choice but that of the threshold is by skill on folds
+ * that did not choose the threshold.
+ *
+ * @param runs   runs[i][c] of the tuning part, for the singular vectors
+ * @param delays windows to try
+ * @param level  a model with a short window, for its level
+ */
+export function searchVariables(
+  ground: Ground,
+  runs: readonly (readonly Float64Array[])[],
+  request: RehearsalRequest,
+  delays: readonly number[],
+  level: Projected,
+  progress: (share: number, doing: string) => void,
+): SearchedVariables {
+  const { ceiling, spans } = ground;
+  const pairs: TunedVariable[] = [];
+  let tried = 0;
+  const forcings: Forcing[] = [];
+  const wanted = request.variable === 'level' ? [] : delays;
+  wanted.forEach((window, w) => {
+    const seconds = Number((window * spans.interval).toPrecision(3));
+    progress((0.8 * w) / wanted.length, `windows of ${seconds} s (${w + 1} of ${wanted.length})`);
+    for (const forcing of forcingsOf(runs, window, request)) {
+      forcings.push(forcing);
+      const signal = forcingSignal(forcing.projected);
+      const found = tuneSignal(ground, signal, request.threshold, 1);
+      tried += found.rules;
+      pairs.push(...found.tuned.map((one) => ({ ...one, delays: window, rank: forcing.rank })));
+    }
+  });
+  const refined = shortList(pairs, ceiling).flatMap((pair, i, { length }) => {
+    progress(0.8 + (0.15 * i) / length, 're-arm, on-delay and hold-off');
+    const { projected } = forcings.find(({ delays, rank }) => delays === pair.delays && rank === pair.rank)!;
+    const found = tuneSignal(ground, forcingSignal(projected), request.threshold, Number.POSITIVE_INFINITY);
+    tried += found.rules;
+    return [pair, ...found.tuned.map((one) => ({ ...one, delays: pair.delays, rank: pair.rank }))];
+  });
+  progress(0.95, 'plain levels');
+  const held = request.variable === 'level' ? request.threshold : null;
+  const { levels, rules } = tuneLevels(ground, level, held);
+  tried += rules;
+  const forcing = bestTuned(refined.length > 0 ? refined : pairs, ceiling) as TunedVariable | null;
+  const all = [...bestOfPairs(pairs, refined, ceiling), ...levels];
+  return { forcing, levels, pairs: all.map((one) => toTriedSetting(one, spans.interval)), tried };
+}
+
+/** The variable that a model's last coordinate is. */
+export function forcingSignal(model: Projected): Signal {
+  return {
+    name: 'forcing',
+    setting: '',
+    variable: 'forcing',
+    direction: 'rising',
+    quietIsZero: true,
+    thresholds: null,
+    trace: (recording, places) => traceOf(model, recording, 'forcing', places),
+  };
+}
+
+/** The level of a model's first channel, rising and falling. */
+export function levelSignals(model: Projected): Signal[] {
+  return bothDirections('level', '', (recording, places) => traceOf(model, recording, 'level', places));
+}
+
+/** The level of a model's first channel in both directions, each tuned with all manners. */
+export function tuneLevels(
+  ground: Ground,
+  model: Projected,
+  held: number | null,
+): { levels: TunedVariable[]; rules: number } {
+  let rules = 0;
+  const levels = levelSignals(model).flatMap((signal) => {
+    const found = tuneSignal(ground, signal, held, Number.POSITIVE_INFINITY);
+    rules += found.rules;
+    const best = bestTuned(found.tuned, ground.ceiling);
+    return best === null ? [] : [{ ...best, delays: model.delays, rank: model.rank }];
+  });
+  return { levels, rules };
+}
+
+function tuneSignal(ground: Ground, signal: Signal, held: number | null, manners: number) {
+  const tried = triedOn(ground, signal);
+  const all = mannersOn(ground, tried, signal);
+  const count = all.length > 1 && manners > 1 ? REFINED_THRESHOLDS : undefined;
+  const thresholds = held === null ? thresholdsOf(signal, tried, count) : [held];
+  return tune(ground, tried, signal, all.slice(0, manners), thresholds);
+}
+
+function shortList(pairs: readonly TunedVariable[], ceiling: Ceiling | null): TunedVariable[] {
+  const left = [...pairs];
+  const list: TunedVariable[] = [];
+  while (left.length > 0 && list.length < REFINED) {
+    const best = bestTuned(left, ceiling) as TunedVariable;
+    list.push(best);
+    left.splice(left.indexOf(best), 1);
+  }
+  return list;
+}
+
+/** One entry a window and rank: the best manner of it. */
+function bestOfPairs(
+  pairs: readonly TunedVariable[],
+  refined: readonly TunedVariable[],
+  ceiling: Ceiling | null,
+): TunedVariable[] {
+  return pairs.map((pair) => {
+    const same = refined.filter(({ delays, rank }) => delays === pair.delays && rank === pair.rank);
+    return same.length === 0 ? pair : (bestTuned(same, ceiling) as TunedVariable);
+  });
+}
+
+function toTriedSetting(
+  { delays, rank, signal, merit, point }: TunedVariable,
+  interval: number,
+): TriedSetting {
+  const { skill, detection, cameTrue } = merit;
+  const { threshold } = point.rule;
+  return {
+    delays,
+    window: delays * interval,
+    rank,
+    variable: signal.name,
+    skill,
+    detection,
+    cameTrue,
+    threshold,
+  };
+}
+
+/**
+ * The variable that was asked for, or the better of the two.
+ *
+ * @throws InputError NOTHING_TO_WARN_OF when no switch of the tuning part could have been warned of
+ */
+export function chooseVariable(
+  { forcing, levels }: SearchedVariables,
+  variable: RehearsalRequest['variable'],
+  ceiling: Ceiling | null,
+): TunedVariable {
+  const candidates = [
+    ...(variable === 'level' || forcing === null ? [] : [forcing]),
+    ...(variable === 'forcing' ? [] : levels),
+  ];
+  const best = choosePoint(
+    candidates.map(({ merit }) => merit),
+    ceiling,
+  );
+  const chosen = candidates.find(({ merit }) => merit === best?.point);
+  if (chosen !== undefined) return chosen;
+  throw new InputError(
+    'NOTHING_TO_WARN_OF',
+    'no switch on the tuning part could have been warned of; give longer recordings, another rule for the switch, or a longer horizon',
+  );
+}

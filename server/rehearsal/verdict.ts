@@ -1,0 +1,107 @@
+import type { Ceiling, Verdict } from '../../shared-types/rehearsal.ts';
+import type { Score } from '../../shared-types/score.ts';
+import { LEAST_PERFECT_SKILL } from './perfect.ts';
+import { counted, percent, pluralOf, short } from './words.ts';
+
+/** Fewer judged switches than this say too little. */
+export const FEWEST_EVENTS = 10;
+/** From this chance of a warner without knowledge doing as well, no skill is claimed. */
+const LARGEST_P = 0.01;
+
+/** What a verdict is given on. */
+export interface VerdictTask {
+  /** of the judged part, with its p-value */
+  score: Score;
+  /** what was chosen: "forcing", "level rising" */
+  variable: string;
+  ceiling: Ceiling;
+  /** the best baseline and our skill less its, with the 95 % interval; null: none that keeps within the ceiling */
+  rival: { name: string; skill: number; value: number; low: number; high: number } | null;
+  /** the model was fitted on what is judged */
+  fittedOnJudged: boolean;
+  /** a level could have been passed over for the forcing */
+  levelChosenFreely: boolean;
+  /** skill of the perfect warner */
+  perfect: number | null;
+  word: string;
+  /** switches an hour in all recordings, and the share of the time that is judged */
+  perHour: number;
+  judgedShare: number;
+}
+
+/** The verdict of a rehearsal: the first of the kinds in their order that applies, in a sentence with its figures. */
+export function verdictOf(task: VerdictTask): Verdict {
+  const { kind, than, sentence } = firstThatApplies(task);
+  const { perfect, word } = task;
+  const crowded =
+    perfect !== null && perfect < LEAST_PERFECT_SKILL
+      ? ` The horizon is too long for such frequent ${pluralOf(word)}: even a perfect warner would have a skill of ${short(perfect)}.`
+      : '';
+  return { kind, than, sentence: `${sentence}${crowded}` };
+}
+
+function firstThatApplies(task: VerdictTask): Verdict {
+  const { score, rival, word } = task;
+  const { warned, late, missed } = score.switches;
+  const total = warned + late + missed;
+  const verdict = (kind: Verdict['kind'], sentence: string, than: string | null = null) => ({
+    kind,
+    than,
+    sentence,
+  });
+  if (total < FEWEST_EVENTS) return verdict('too few events', tooFewWords(task, total));
+  const { skill, pValue } = score;
+  if (pValue === null || pValue >= LARGEST_P) {
+    const chance = pValue === null ? '' : ` (p ${short(pValue)})`;
+    return verdict(
+      'no skill',
+      `No skill: warnings as many, moved to another time, do as well often enough${chance}; skill ${short(skill ?? 0)} on ${counted(total, word)}.`,
+    );
+  }
+  if (rival !== null && rival.low <= 0) {
+    const plain = task.variable.startsWith('level') ? 'the plain level chosen here' : `the ${task.variable}`;
+    return verdict(
+      'no better than',
+      `No better than ${rival.name}: its skill is ${short(rival.skill)}, that of ${plain} ${short(skill!)}; difference ${short(rival.value)}, 95 % interval ${short(rival.low)} to ${short(rival.high)} on ${counted(total, word)}.`,
+      rival.name,
+    );
+  }
+  const fault = faultOf(task);
+  if (fault !== null) return verdict('weak', `Weak: ${fault}; skill ${short(skill!)}, p ${short(pValue)}.`);
+  return verdict('useful', usefulWords(task));
+}
+
+function tooFewWords({ perHour, judgedShare, word }: VerdictTask, total: number): string {
+  const rate = perHour * judgedShare;
+  const missing = FEWEST_EVENTS - total;
+  const hours =
+    rate > 0 ? `; at this rate about ${short(missing / rate)} more hours of recording are needed` : '';
+  return `Too few events: ${counted(total, word)} judged, at least ${FEWEST_EVENTS} are needed to say anything${hours}.`;
+}
+
+/** Why a watch with skill is still not called useful; null: nothing. */
+function faultOf({ score, ceiling, fittedOnJudged }: VerdictTask): string | null {
+  const cameTrue = score.cameTrue.value ?? 0;
+  const falsePerHour = score.falsePerHour.value ?? 0;
+  if (fittedOnJudged) return 'the model was fitted on data judged here, so this says nothing about new data';
+  if (ceiling.falsePerHour !== null && falsePerHour > ceiling.falsePerHour)
+    return `${short(falsePerHour)} false warnings an hour, outside the ceiling of ${short(ceiling.falsePerHour)}`;
+  if (ceiling.cameTrue !== null && cameTrue < ceiling.cameTrue)
+    return `only ${percent(cameTrue)} of the warnings came true, outside the ceiling of ${percent(ceiling.cameTrue)}`;
+  if (cameTrue < 0.5) return `only ${percent(cameTrue)} of the warnings came true, fewer than half`;
+  return null;
+}
+
+function usefulWords({ score, variable, rival, levelChosenFreely }: VerdictTask): string {
+  const { skill, cameTrue, pValue, skillShare } = score;
+  const share = skillShare === null ? '' : ` (${percent(skillShare)} of what a perfect warner reaches)`;
+  const beaten =
+    rival === null
+      ? 'no other baseline keeps within what was asked for'
+      : `${short(rival.value)} more than ${rival.name}, 95 % interval ${short(rival.low)} to ${short(rival.high)}`;
+  const plain =
+    levelChosenFreely && variable.startsWith('level')
+      ? ' A plain level is the answer: nothing made of the delay window does better.'
+      : '';
+  return `Useful: skill ${short(skill!)}${share}, ${beaten}; ${percent(cameTrue.value)} of the warnings came true, p ${short(pValue!)}.${plain}`;
+}
