@@ -58,19 +58,15 @@ export function gridRecording(
   series: readonly RecordedSeries[],
   settings: GriddingSettings,
 ): GriddedRecording {
-  const { channels, interval } = settings;
-  const watched = channels.map((channel) => seriesOf(series, channel));
-  const runs = jointRuns(watched, settings);
-  if (runs.length === 0) {
+  const gridded = gridChannels(series, settings);
+  if (gridded === null) {
     throw new InputError(
       'NO_COMMON_TIME',
-      `the channels ${channels.join(', ')} have no time in common; record them together, or watch one of them`,
+      `the channels ${settings.channels.join(', ')} have no time in common; record them together, or watch one of them`,
     );
   }
-  const start = runs[0]!.start;
-  for (const run of runs) run.firstStep = Math.round((run.start - start) / interval);
-  const last = runs.at(-1)!;
-  const end = last.start + (last.newest.length - 1) * interval;
+  const { start, end, interval, runs } = gridded;
+  const { channels } = settings;
   const { switches, unseen, known } = findSwitches(
     seriesOf(series, regimeChannelOf(settings.regime, settings.regimeChannel, channels)),
     settings,
@@ -78,6 +74,29 @@ export function gridRecording(
   // only what lies within the watched time can be graded
   const within = switches.filter(({ at }) => at >= start - interval / 2 && at <= end + interval / 2);
   return { interval, start, end, known: Math.min(known, end), runs, switches: within, unseen };
+}
+
+/**
+ * Puts channels of a recording on the grid, without looking for switches.
+ *
+ * @returns null where the channels have no time in common
+ * @throws InputError when a channel is not in the recording or has no samples
+ */
+export function gridChannels(
+  series: readonly RecordedSeries[],
+  settings: Pick<GriddingSettings, 'channels' | 'interval' | 'gapIntervals'>,
+): GriddedRecording | null {
+  const { interval } = settings;
+  const runs = jointRuns(
+    settings.channels.map((channel) => seriesOf(series, channel)),
+    settings,
+  );
+  const last = runs.at(-1);
+  if (last === undefined) return null;
+  const start = runs[0]!.start;
+  for (const run of runs) run.firstStep = Math.round((run.start - start) / interval);
+  const end = last.start + (last.newest.length - 1) * interval;
+  return { interval, start, end, known: end, runs, switches: [], unseen: [] };
 }
 
 /** The channel a regime rule reads: that of its marks, the one named, or the first of the watched ones. */
@@ -112,7 +131,7 @@ interface OpenRun {
 
 function jointRuns(
   watched: readonly RecordedSeries[],
-  { interval, gapIntervals }: GriddingSettings,
+  { interval, gapIntervals }: Pick<GriddingSettings, 'interval' | 'gapIntervals'>,
 ): GriddedRun[] {
   const grid = createJointGrid(watched.length, interval, gapIntervals);
   const leader = createGridBlock();
