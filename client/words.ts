@@ -14,10 +14,10 @@ export function numberText(value: number, decimals: number, plus = false): strin
   return (zero ? '' : value < 0 ? MINUS : plus ? '+' : '') + digits;
 }
 
-/** Decimals that resolve about a thousandth of a span of values. */
+/** Decimals that resolve about a hundredth of a span of values. */
 export function decimalsFor(span: number): number {
   if (!(span > 0) || !Number.isFinite(span)) return 2;
-  return Math.min(6, Math.max(0, Math.ceil(2.5 - Math.log10(span))));
+  return Math.min(6, Math.max(0, Math.ceil(2 - Math.log10(span))));
 }
 
 /** A span of time in words: "0.2 s", "16 s", "1 min 20 s", "2 h 05 min". */
@@ -118,7 +118,7 @@ export function badgeOf(state: AlarmState): { mark: string; words: string; kind:
     case 'acknowledged':
       return { mark: '✓', words: 'acknowledged', kind: 'acknowledged' };
     case 'shelved':
-      return { mark: '⏸', words: 'shelved', kind: 'shelved' };
+      return { mark: '‖', words: 'shelved', kind: 'shelved' };
     case 'out of service':
       return { mark: '×', words: 'out of service', kind: 'out' };
     default:
@@ -127,7 +127,7 @@ export function badgeOf(state: AlarmState): { mark: string; words: string; kind:
 }
 
 /** What is the matter with a channel, one remark each; empty when nothing is. */
-export function channelRemarks(channel: ChannelState, today: number): string[] {
+export function channelRemarks(channel: ChannelState): string[] {
   const remarks: string[] = [];
   if (channel.newest === null) remarks.push('no sample yet');
   else if (channel.silent) remarks.push(`silent since ${clockText(channel.newest)}`);
@@ -149,7 +149,6 @@ export function channelRemarks(channel: ChannelState, today: number): string[] {
       `${counted(channel.refused, 'frame')} refused${channel.refusal ? `: ${channel.refusal}` : ''}`,
     );
   }
-  void today;
   return remarks;
 }
 

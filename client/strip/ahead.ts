@@ -89,7 +89,7 @@ function place(span: Span, warning: Warning, view: StripView, left: number, perS
 
 /** Seconds between the labels of a plot of some width that looks so far back. */
 export function tickStepFor(seconds: number, width: number): number {
-  return timeStep(seconds, Math.max(2, Math.floor(width / 120)));
+  return timeStep(seconds, Math.max(2, Math.floor(width / (width < 420 ? 84 : 120))));
 }
 
 /** A distance from now at a tick: "40 s", "5 min", "2 h", in the unit that suits the step between ticks. */

@@ -45,7 +45,8 @@ export function createPair(host: HTMLElement, watched: boolean): Pair {
     labelColour: () => ink().inkSoft,
     valueGrid: true,
     width: 1.6,
-    range: (low, high) => (signalRange = calmRange(signalRange, low, high)),
+    range: (low, high) =>
+      low === null ? (signalRange ?? [0, 1]) : (signalRange = calmRange(signalRange, low, high)),
     valueTicks: (low, high) => valueTicks(low, high),
     valueLabels: (ticks) => valueLabels(ticks, signalRange ?? [0, 1]),
     under: (plot) => underSignal(plot, view),

@@ -104,6 +104,8 @@ function uPlotOptions(
       {
         stroke: () => options.colour(),
         width: options.width,
+        // a lone sample between two gaps is a dot, not nothing
+        cap: 'round',
         points: { show: false },
         paths: (plot, _series, first, last) => {
           const path = linePath(plot, first, last);
@@ -170,9 +172,10 @@ function linePath(plot: uPlot, first: number, last: number): Path2D {
       leave();
       path.lineTo(x, y);
     } else {
-      path.moveTo(x, y);
-      // a lone point between two gaps still shows
-      path.lineTo(x + 0.01, y);
+      // a lone sample between two gaps shows as a short stroke
+      const alone = (ys[i + 1] ?? null) === null ? 1.5 * devicePixelRatio : 0;
+      path.moveTo(x - alone, y);
+      path.lineTo(x + alone, y);
     }
     drawing = true;
     column = Math.floor(x);

@@ -20,7 +20,7 @@ export function readingText(view: StripView, time: number, perSecond: number): s
       ? ''
       : trace === null
         ? ', blind'
-        : `, ${variable} ${thresholdText(trace.value, variable, view.channel.unit)}`;
+        : `, ${variable} ${thresholdText(Number(trace.value.toPrecision(2)), variable, view.channel.unit)}`;
   return `${clockText(time, perSecond > 8 ? 2 : 1)}, ${spanText(ago)} ago: ${value}${watched}`;
 }
 

@@ -45,7 +45,7 @@ export function createSide(): Side {
       say(label, channel.label);
       say(unit, channel.unit);
       sayBadge(badge, channel, watch);
-      const words = channelRemarks(channel, today);
+      const words = channelRemarks(channel);
       if (watch?.rule && channel.clockOffset !== null && channel.clockOffset >= watch.rule.leastLead) {
         words.push(
           `its data come ${spanText(channel.clockOffset)} late: that eats the least lead of ${spanText(watch.rule.leastLead)}`,

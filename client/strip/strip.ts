@@ -1,5 +1,6 @@
 import { indexAtOrAfter } from '../columns.ts';
 import { element, mark, say } from '../dom.ts';
+import { spanText } from '../words.ts';
 import { createAhead, tickStepFor } from './ahead.ts';
 import { createPair, type Pair } from './pair.ts';
 import { VALUE_ROOM } from './panel.ts';
@@ -74,7 +75,8 @@ export function createStrip(key: StripKey, actions: StripActions): Strip {
       markStance(root, view);
       spoken.update(view);
       say(veil, veilText(view));
-      const end = (view.watch?.rule?.horizon ?? 0) * perSecond(view) + 14;
+      const quiet = root.dataset.stance === 'quiet' && view.open.length === 0;
+      const end = quiet ? 0 : (view.watch?.rule?.horizon ?? 0) * perSecond(view) + 14;
       const rightmost = aheadWidth - WORDS_WIDTH;
       root.style.setProperty('--words-left', `${Math.round(Math.max(16, Math.min(end, rightmost)))}px`);
       mark(root, 'data-crowded', end > rightmost && view.open.length > 0 ? 'yes' : null);
@@ -128,11 +130,12 @@ function newestValue(view: StripView): number | null {
 
 function veilText(view: StripView): string | null {
   if (view.channel.newest === null) return 'No sample has come yet.';
-  if (view.page.zoom !== null) return null;
-  const begins = indexAtOrAfter(view.signal.x, view.from);
-  return begins >= view.signal.x.length && view.channel.silent
-    ? `Nothing has come in the last ${Math.round(view.page.look.seconds)} s.`
-    : null;
+  const { x, y } = view.signal;
+  for (let i = indexAtOrAfter(x, view.from); i < x.length && x[i]! <= view.to; i++)
+    if (y[i] !== null) return null;
+  return view.page.zoom === null
+    ? `No sample in the last ${spanText(view.page.look.seconds)}.`
+    : 'No sample in this stretch.';
 }
 
 function cssName(key: StripKey): string {

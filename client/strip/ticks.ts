@@ -38,16 +38,15 @@ export function calmRange(
   low: number | null,
   high: number | null,
 ): [number, number] {
-  if (low === null || high === null || !Number.isFinite(low) || !Number.isFinite(high))
-    return kept ?? [-1, 1];
+  if (low === null || high === null || !Number.isFinite(low) || !Number.isFinite(high)) return kept ?? [0, 1];
   if (kept !== null) {
     const fits = low >= kept[0] && high <= kept[1];
     const fills =
       high - low >= 0.45 * (kept[1] - kept[0]) ||
-      (high === low && kept[1] - kept[0] <= 2.1 * Math.abs(low || 1));
+      (high === low && kept[1] - kept[0] <= 0.11 * Math.abs(low || 20));
     if (fits && fills) return kept;
   }
-  if (high === low) return [low - Math.abs(low || 1), high + Math.abs(high || 1)];
+  if (high === low) return [low - 0.05 * Math.abs(low || 20), high + 0.05 * Math.abs(low || 20)];
   const margin = 0.09 * (high - low);
   return [low - margin, high + margin];
 }

@@ -44,7 +44,8 @@ export function createFrame(
   for (const each of [lost, trouble, complaint]) say(each, null);
   zoomed.hidden = true;
   const notices = element('div', 'notices', lost, trouble, complaint, zoomed);
-  host.replaceChildren(header.root, notices, first.root, strips.root, today.root, caution(), announced);
+  const key = legend();
+  host.replaceChildren(header.root, notices, first.root, strips.root, key, today.root, caution(), announced);
   return {
     update: (view, connected, unheard) => {
       header.update(view.state, view.today, view.lost);
@@ -52,6 +53,7 @@ export function createFrame(
       strips.tell();
       today.update(view.state, view.today);
       today.root.hidden = view.state.channels.size === 0;
+      key.hidden = ![...view.state.watches.values()].some((watch) => watch.use === 'in use');
       say(lost, lostText(view, connected, unheard));
       say(
         trouble,
@@ -97,6 +99,22 @@ function announcement(views: StripView[]): string {
     ];
   });
   return parts.join(' ');
+}
+
+/** What the marks on the paper mean. */
+function legend(): HTMLElement {
+  const sign = (mark: string, className: string, words: string) =>
+    element('span', '', element('b', className, mark), ` ${words}`);
+  return element(
+    'p',
+    'legend',
+    sign('▼', '', 'switch'),
+    sign('', 'hatched', 'second regime'),
+    sign('▲', 'red', 'warning issued'),
+    sign('△', 'red', 'warning that came too late to speak'),
+    sign('╌╌', 'red', 'threshold'),
+    sign('┈┈', '', 're-arms below'),
+  );
 }
 
 function caution(): HTMLElement {

@@ -16,5 +16,5 @@ export function stripKeys(state: PageState): StripKey[] {
 /** Height of a strip in CSS pixels so that few strips fill the window and many can be scrolled through. */
 export function stripHeight(count: number, windowHeight: number, taken: number): number {
   const fair = (windowHeight - taken) / Math.max(1, count) - 18;
-  return Math.round(Math.min(420, Math.max(count > 4 ? 176 : 236, fair)));
+  return Math.round(Math.min(420, Math.max(count > 4 ? 196 : 236, fair)));
 }

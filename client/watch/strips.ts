@@ -70,7 +70,7 @@ export function createStrips(page: PageView, actions: StripActions): Strips {
     const key = `${plotWidth} ${aheadWidth} ${height} ${entries.size} ${devicePixelRatio}`;
     if (key === laidOut || plotWidth === 0) return;
     laidOut = key;
-    mark(root, 'data-tight', height < 205 ? 'yes' : null);
+    mark(root, 'data-tight', height < 215 ? 'yes' : null);
     for (const { strip } of entries.values()) strip.setSize(height, plotWidth, aheadWidth);
     columnsWanted(Math.max(100, Math.round(plotWidth * Math.min(2, devicePixelRatio))));
   };

@@ -14,7 +14,7 @@ const ROWS = 12;
 /** Creates the lower part of the page. */
 export function createToday(): Today {
   const since = element('h2', 'since');
-  const sentence = element('p', 'sentence');
+  const sentences = element('div', 'sentences');
   const body = element('tbody');
   const heads = ['Time', 'Channel', 'What became of it', 'Acknowledged', 'Span or lead'].map((text) => {
     const head = element('th', '', text);
@@ -32,7 +32,7 @@ export function createToday(): Today {
   let known: PageState | null = null;
   let day = -1;
   return {
-    root: element('section', 'grades', since, element('div', 'gradeWords', sentence, table, none)),
+    root: element('section', 'grades', since, element('div', 'gradeWords', sentences, table, none)),
     update: (state, today) => {
       if (
         known !== null &&
@@ -48,12 +48,10 @@ export function createToday(): Today {
       );
       const starts = watches.map((watch) => watch.gradeSince).filter((time) => time !== null);
       say(since, starts.length > 0 ? `Since ${minuteText(Math.min(...starts), today)}` : 'So far');
-      say(
-        sentence,
-        watches.length === 0
-          ? 'No watch is in use.'
-          : watches.map((watch) => gradeSentence(watch, nameOf(state, watch.watch))).join(' '),
-      );
+      const words = watches.map((watch) => gradeSentence(watch, nameOf(state, watch.watch)));
+      if (words.length === 0) words.push('No watch is in use.');
+      sentences.replaceChildren(...words.map((text) => element('p', 'sentence', text)));
+      mark(sentences, 'data-many', words.length > 4 ? 'yes' : null);
       const last = [...state.warnings.values()]
         .sort((a, b) => b.madeAt - a.madeAt || b.id - a.id)
         .slice(0, ROWS);

@@ -13,7 +13,7 @@ const option = (name, otherwise) => {
   return at < 0 ? otherwise : process.argv[at + 1];
 };
 const scene = option('scene', 'busy');
-const root = fileURLToPath(new URL('../../dist/client/', import.meta.url));
+const root = fileURLToPath(new URL(option('pages', '../../dist/client/'), import.meta.url));
 const encoder = new Encoder({ useRecords: false, tagUint8Array: false });
 const POLICY = "default-src 'none'; script-src 'self'; style-src 'self'; img-src 'self'; connect-src 'self'; base-uri 'none'";
 const TYPES = { '.html': 'text/html', '.js': 'text/javascript', '.css': 'text/css', '.svg': 'image/svg+xml' };
@@ -24,8 +24,8 @@ const count = scene === 'sixteen' ? 16 : scene === 'empty' ? 0 : 3;
 const started = Date.now() / 1000;
 let random = 7;
 const next = () => {
-  random = (random * 1664525 + 1013904223) % 4294967296;
-  return random / 4294967296;
+  random = (Math.imul(random ^ (random >>> 15), 0x2c1b3c6d) + 0x9e3779b9) >>> 0;
+  return ((random ^ (random >>> 13)) >>> 0) / 4294967296;
 };
 
 // ---- an invented loop: the Lorenz equations slowed to about 15 s an orbit, read through a noisy sensor
@@ -211,8 +211,9 @@ function settle(warning, outcome, switchAt, live) {
   warning.lead = switchAt === null ? null : switchAt - warning.at;
   if (!live) return;
   const watch = watches.find((each) => each.watch === warning.watch);
-  if (watch.state === 'unacknowledged') watch.state = 'returned to normal, unacknowledged';
-  if (watch.state === 'acknowledged') watch.state = 'normal';
+  const others = warnings.some((each) => each.watch === watch.watch && each.outcome === 'open');
+  if (watch.state === 'unacknowledged' && !others) watch.state = 'returned to normal, unacknowledged';
+  if (watch.state === 'acknowledged' && !others) watch.state = 'normal';
   broadcast({ kind: 'warning', warning });
   broadcast({ kind: 'watch', watch });
 }
