@@ -30,7 +30,7 @@ export function appendColumns(points: Points, columns: Columns, gapSeconds = Inf
     if (start - end > gapSeconds) breakLine(points, end + (start - end) / 2);
     const width = i + 1 < t.length ? t[i + 1]! - start : i > 0 ? start - t[i - 1]! : 0;
     appendColumn(points, start, width, low[i]!, high[i]!);
-    end = points.x[points.x.length - 1]!;
+    end = points.x[points.x.length - 1] ?? start;
   }
 }
 
