@@ -142,6 +142,8 @@ export interface RehearsalResult {
   score: Score;
   /** chosen outside the ceiling, or with fewer than half coming true, for want of anything better */
   weak: boolean;
+  /** a given model was fitted on what is judged here: the score says nothing about new data */
+  fittedOnJudged: boolean;
   contenders: Contender[];
   pairs: TriedSetting[];
   /** settings tried in all */

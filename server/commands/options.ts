@@ -40,7 +40,8 @@ export interface RuleChoice {
   holdOff: number | null;
 }
 
-type OptionValues = { [name: string]: string | boolean | (string | boolean)[] | undefined };
+/** Options as `parseArgs` of node:util returns them. */
+export type OptionValues = { [name: string]: string | boolean | (string | boolean)[] | undefined };
 
 /**
  * Reads the rule options out of what `parseArgs` returned; null when none was given.

@@ -1,98 +1,120 @@
 import type { Model } from '../../shared-types/model.ts';
+import type { Contender, RehearsalResult } from '../../shared-types/rehearsal.ts';
 import type { Interval, Score } from '../../shared-types/score.ts';
-import type { Recording } from '../recordings/recording.ts';
 import type { Rehearsal, RehearsedWarning } from '../rehearsal/rehearse.ts';
-import type { WatchSettings } from '../watch/types.ts';
+import { counted, pluralOf } from '../rehearsal/words.ts';
 
 /** Below this a recording has elapsed time, not the time of a clock. */
 const CLOCK_TIME = 1e8;
 
-/** Whether the model was fitted on data that this rehearsal judges: then the score says nothing about new data. */
-export function fittedOnJudged(
-  model: Model,
-  recordings: readonly Recording[],
-  rehearsal: Rehearsal,
-): boolean {
-  return recordings.some(({ name, sha256, channels }, i) => {
-    const end = Math.max(...channels.map(({ times }) => times.at(-1) ?? Number.NEGATIVE_INFINITY));
-    const judgedFrom = rehearsal.judgedFrom[i]!;
-    return model.provenance.recordings.some(
-      (used) =>
-        (used.sha256 === sha256 || used.name === name) &&
-        Math.min(used.to, end) > judgedFrom + 2 * model.interval &&
-        judgedFrom <= end,
-    );
-  });
-}
-
 /** What `rehearse --json` prints. */
 export function jsonOfRehearsal(
-  { model, channels, rule, regime, regimeChannel }: WatchSettings,
-  recordings: readonly Recording[],
-  { switches, warnings, score, judgedFrom }: Rehearsal,
-  seen: boolean,
+  result: RehearsalResult,
+  model: Model,
+  { switches, warnings, judgedFrom }: Rehearsal,
 ): object {
+  const { recordings, contenders, request, settings } = result;
   const named = <T extends { recording: number }>(list: T[]) =>
     list.map(({ recording, ...rest }) => ({ recording: recordings[recording]!.name, ...rest }));
+  const byName = (list: Contender[]) =>
+    Object.fromEntries(list.map(({ name, kind: _kind, curve: _curve, ...rest }) => [name, rest]));
   return {
-    recordings: recordings.map(({ name, sha256 }, i) => ({
-      name,
-      sha256,
+    sentence: result.sentence,
+    verdict: result.verdict,
+    recordings: recordings.map((one, i) => ({
+      ...one,
       judgedFrom: Number.isFinite(judgedFrom[i]) ? judgedFrom[i] : null,
     })),
     switches: named(switches),
     warnings: named(warnings),
-    score,
+    score: result.score,
+    variables: byName(contenders.filter(({ kind }) => kind === 'variable')),
+    baselines: byName(contenders.filter((one) => isBaseline(one, settings))),
     settings: {
       model: model.name,
-      channels,
-      interval: model.interval,
-      delays: model.delays,
-      rank: model.rank,
-      ...rule,
-      regime,
-      regimeChannel,
+      channels: request.channels,
+      ...settings,
+      regime: model.regime,
+      regimeChannel: model.regimeChannel,
     },
-    fittedOnJudged: seen,
+    weak: result.weak,
+    tried: result.tried,
+    pairs: result.pairs,
+    fittedOnJudged: fittedOnJudged(result),
+    leftOut: named(result.leftOut),
+    seconds: result.seconds,
+    program: result.program,
+    at: result.at,
   };
 }
 
-/** The rehearsal in words: one sentence first, then the score, then every warning. */
-export function describeRehearsal(
-  settings: WatchSettings,
-  recordings: readonly Recording[],
-  rehearsal: Rehearsal,
-  seen: boolean,
-): string {
-  const { model } = settings;
-  const { score, warnings } = rehearsal;
-  const lines = [headline(settings, score), ...scoreLines(score, model.switchWord)];
-  if (seen) {
+/** The plain levels are baselines as well, except for the one that was chosen. */
+function isBaseline(
+  { kind, name }: Contender,
+  { variable, direction }: RehearsalResult['settings'],
+): boolean {
+  if (kind === 'baseline') return true;
+  return name.startsWith('level ') && !(variable === 'level' && name === `level ${direction}`);
+}
+
+/** Whether the verdict had to say that the model was fitted on what is judged. */
+const fittedOnJudged = (result: RehearsalResult): boolean => result.fittedOnJudged;
+
+/** The rehearsal in words: the answer first, then the verdict, the score, who else was tried, and every warning. */
+export function describeRehearsal(result: RehearsalResult, model: Model, { warnings }: Rehearsal): string {
+  const { score, settings, tried, contenders, recordings } = result;
+  const lines = [
+    result.sentence,
+    result.verdict.sentence,
+    '',
+    settingsLine(settings),
+    ...(tried > 1 ? [`tried             ${tried} settings, chosen on the part before`] : []),
+    ...scoreLines(score, model.switchWord),
+  ];
+  if (fittedOnJudged(result)) {
     lines.push(
       'The model was fitted on data judged here, so this says nothing about new data; raise --tune-part.',
     );
   }
-  lines.push('', ...warningLines(warnings, recordings));
+  lines.push('', ...contenderLines(contenders), '');
+  lines.push(
+    ...warningLines(
+      warnings,
+      recordings.map(({ name }) => name),
+    ),
+  );
   return `${lines.join('\n')}\n`;
 }
 
-function headline(
-  { rule, model }: WatchSettings,
-  { switches, detection, lead, falsePerHour }: Score,
-): string {
-  const counted = switches.warned + switches.late + switches.missed;
-  const side = rule!.direction === 'falling' ? 'below' : 'above';
-  const unit = rule!.variable === 'forcing' ? 'sd' : model.channels[0]!.unit;
-  const variable = rule!.variable === 'forcing' ? 'Forcing' : 'The level';
-  const watch = `${variable} ${side} ${round(rule!.threshold, 2)} ${unit}`.trimEnd();
-  if (counted === 0) return `${watch}: no ${model.switchWord} in the judged part could have been warned of.`;
+function settingsLine({
+  window,
+  delays,
+  rank,
+  rearm,
+  onDelay,
+  holdOff,
+}: RehearsalResult['settings']): string {
   const parts = [
-    `${watch} warned ${switches.warned} of ${counted} ${model.switchWord}${counted === 1 ? '' : 's'}`,
-    `95 % interval ${percent(detection.low)} to ${percent(detection.high)} %`,
+    `window ${Number(window.toPrecision(4))} s (${delays} delays)`,
+    `rank ${rank}`,
+    `re-arm ${Number(rearm.toPrecision(3))}`,
+    `on-delay ${Number(onDelay.toPrecision(3))} s`,
+    `hold-off ${Number(holdOff.toPrecision(3))} s`,
   ];
-  if (lead.median !== null) parts.push(`median lead ${round(lead.median, 1)} s`);
-  if (falsePerHour.value !== null) parts.push(`${round(falsePerHour.value, 1)} false warnings an hour`);
-  return `${parts.join(', ')}.`;
+  return `settings          ${parts.join(', ')}`;
+}
+
+function contenderLines(contenders: readonly Contender[]): string[] {
+  const rows = contenders.map(({ name, settings, skill, detection, cameTrue }) =>
+    [
+      name.padEnd(30),
+      round(skill, 2).padStart(6),
+      percent(detection).padStart(7),
+      percent(cameTrue).padStart(8),
+      `  ${settings}`,
+    ].join(''),
+  );
+  return [`${'variable or baseline'.padEnd(30)} skill warned % true %   set to`, ...rows];
 }
 
 function scoreLines(score: Score, word: string): string[] {
@@ -100,7 +122,7 @@ function scoreLines(score: Score, word: string): string[] {
   const leads = [lead.p10, lead.median, lead.p90].map((value) => round(value, 1)).join(' / ');
   return [
     `judged            ${round(score.watchedSeconds / 3600, 2)} h with a full window`,
-    `${`${word}s`.padEnd(17)} ${switches.total}: ${listed({ ...switches, total: 0 })}`,
+    `${pluralOf(word).padEnd(17)} ${switches.total}: ${listed({ ...switches, total: 0 })}`,
     `warnings          ${warnings.total}: ${listed({ ...warnings, total: 0 })}`,
     `came true         ${shareOf(score.cameTrue)}`,
     `false             ${shareOf(score.falseRatio)}; an hour ${round(score.falsePerHour.low, 1)} to ${round(score.falsePerHour.high, 1)}`,
@@ -116,13 +138,16 @@ function shareWords({ skill, skillShare }: Score): string {
   return 'the horizon is too long for such frequent switches, even a perfect warner would have little skill';
 }
 
-function warningLines(warnings: readonly RehearsedWarning[], recordings: readonly Recording[]): string[] {
+function warningLines(warnings: readonly RehearsedWarning[], recordings: readonly string[]): string[] {
   if (warnings.length === 0) return ['no warnings'];
-  const lines = ['at                        value  outcome  lead    part'];
+  const lines = [
+    `${counted(warnings.length, 'warning')}:`,
+    'at                        value  outcome  lead    part',
+  ];
   let recording = -1;
   for (const warning of warnings) {
     if (recordings.length > 1 && warning.recording !== recording) {
-      lines.push(recordings[warning.recording]!.name);
+      lines.push(recordings[warning.recording]!);
       recording = warning.recording;
     }
     const lead = warning.lead === null ? '' : `${round(warning.lead, 2)} s`;

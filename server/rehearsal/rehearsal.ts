@@ -15,7 +15,7 @@ import { givenModel, type Settled, searchSettings } from './settle.ts';
 import type { RehearsalTask } from './task.ts';
 import type { Ceiling } from './threshold.ts';
 import { traceOf } from './trace.ts';
-import { createGround, type Ground, type Tuned, triedOn } from './tune.ts';
+import { createGround, freeGround, type Ground, type Tuned, triedOn } from './tune.ts';
 import { levelSignals } from './variables.ts';
 import { verdictOf } from './verdict.ts';
 import { switchWordOf } from './words.ts';
@@ -41,7 +41,7 @@ export function runRehearsal(task: RehearsalTask, progress: Progress = () => {})
     task.model == null
       ? searchSettings(task, prepared, ground, runs, within(progress, 0.05, 0.6))
       : givenModel(task.model, ground);
-  const baselines = tuneBaselines(prepared, ground, runs, within(progress, 0.6, 0.75));
+  const baselines = tuneBaselines(prepared, freeGround(ground), runs, within(progress, 0.6, 0.75));
   progress(0.75, 'judging the variables and the baselines');
   return judgeAndReport(task, prepared, ground, searched, baselines, within(progress, 0.75, 1));
 }
@@ -153,6 +153,7 @@ function judgeAndReport(
     },
     score,
     weak: settled.weak,
+    fittedOnJudged,
     contenders: judged.map((one) => contenderOf(one, isVariable(one, chosen, request.variable), unit)),
     pairs: settled.pairs,
     tried: settled.tried,

@@ -7,7 +7,7 @@ import type { Prepared } from './prepare.ts';
 import type { RehearsalTask } from './task.ts';
 import { choosePoint } from './threshold.ts';
 import { delaysToTry } from './toTry.ts';
-import { type Ground, sweep, type Tuned, thresholdsOf, triedOn } from './tune.ts';
+import { freeGround, type Ground, sweep, type Tuned, thresholdsOf, triedOn } from './tune.ts';
 import {
   chooseVariable,
   forcingSignal,
@@ -116,6 +116,6 @@ export function givenModel(model: Model, ground: Ground): Settled {
   const point = { ...best.point, rule };
   const { delays, rank } = model;
   const chosen = { signal, manner, merit: point, point, weak: best.weak, delays, rank };
-  const others = tuneLevels(ground, model, null).levels.filter((one) => one.signal.name !== name);
+  const others = tuneLevels(freeGround(ground), model, null).levels.filter((one) => one.signal.name !== name);
   return { model, chosen, others, rule, weak: best.weak, pairs: [], tried: 1 };
 }

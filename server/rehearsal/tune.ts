@@ -52,6 +52,11 @@ export function createGround(
   return { recordings, places: recordings.map(placesOf), folds, scoredFrom, spans, asked, ceiling };
 }
 
+/** The same ground without what was held fixed: it was meant for another variable's scale. */
+export function freeGround(ground: Ground): Ground {
+  return { ...ground, asked: { ...ground.asked, rearm: null, onDelay: null, holdOff: null } };
+}
+
 /** A signal over all of the ground, ready for trying rules on. */
 export function triedOn(ground: Ground, signal: Signal): Tried[] {
   return ground.recordings.map((recording, i) => {

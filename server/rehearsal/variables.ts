@@ -4,7 +4,16 @@ import { type Forcing, forcingsOf } from './forcings.ts';
 import { bothDirections, type Signal } from './signal.ts';
 import { type Ceiling, choosePoint } from './threshold.ts';
 import { type Projected, traceOf } from './trace.ts';
-import { bestTuned, type Ground, mannersOn, type Tuned, thresholdsOf, triedOn, tune } from './tune.ts';
+import {
+  bestTuned,
+  freeGround,
+  type Ground,
+  mannersOn,
+  type Tuned,
+  thresholdsOf,
+  triedOn,
+  tune,
+} from './tune.ts';
 
 /** A tuned variable with the window and rank that it is made of. */
 export interface TunedVariable extends Tuned {
@@ -68,8 +77,10 @@ export function searchVariables(
     return [pair, ...found.tuned.map((one) => ({ ...one, delays: pair.delays, rank: pair.rank }))];
   });
   progress(0.95, 'plain levels');
-  const held = request.variable === 'level' ? request.threshold : null;
-  const { levels, rules } = tuneLevels(ground, level, held);
+  const { levels, rules } =
+    request.variable === 'level'
+      ? tuneLevels(ground, level, request.threshold)
+      : tuneLevels(freeGround(ground), level, null);
   tried += rules;
   const forcing = bestTuned(refined.length > 0 ? refined : pairs, ceiling) as TunedVariable | null;
   const all = [...bestOfPairs(pairs, refined, ceiling), ...levels];

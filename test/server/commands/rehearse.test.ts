@@ -1,10 +1,10 @@
-import { mkdtemp, rm, writeFile } from 'node:fs/promises';
+import { mkdtemp, readFile, rm, writeFile } from 'node:fs/promises';
 import { tmpdir } from 'node:os';
 import { join } from 'node:path';
 import { afterAll, describe, expect, it, vi } from 'vitest';
 import { fitDemo, trainingSeries } from '../../../server/commands/prepareDemo.ts';
 import { rehearse } from '../../../server/commands/rehearse.ts';
-import { modelToJson } from '../../../server/model/modelFile.ts';
+import { modelFromJson, modelToJson } from '../../../server/model/modelFile.ts';
 import { readCsv, writeCsv } from '../../../server/recordings/csv.ts';
 import type { Model } from '../../../shared-types/model.ts';
 
@@ -24,6 +24,18 @@ async function modelFile(name: string, changes: Partial<Model> = {}): Promise<st
   return file;
 }
 const model = await modelFile('loop-b.json');
+
+const SEARCH = ['--channel', 'Loop B', '--regime', 'sides:-0.3,0.3', '--least-lead', '10', '--horizon', '20'];
+const BASELINES = [
+  'level rising',
+  'level falling',
+  'distance from the mean rising',
+  'distance from the mean falling',
+  'rate of change rising',
+  'rate of change falling',
+  'time since the last switch',
+  'a clock',
+];
 
 /** Runs the command; what it wrote and its exit code. */
 async function run(...argv: string[]): Promise<{ code: number; out: string; err: string }> {
@@ -56,15 +68,20 @@ describe('foreshift rehearse', () => {
     for (const key of ['at', 'from', 'to', 'value', 'outcome', 'part'])
       expect(found.warnings[0]).toHaveProperty(key);
     expect(found.settings).toMatchObject({ delays: fitted.delays, rank: fitted.rank, ...fitted.rule });
-    for (const later of ['baselines', 'verdict', 'tried']) expect(found).not.toHaveProperty(later);
+    expect(found.tried).toBe(1);
+    expect(Object.keys(found.baselines)).toEqual(expect.arrayContaining(BASELINES));
+    for (const one of Object.values(found.baselines))
+      expect(Object.keys(one as object).sort()).toEqual(['cameTrue', 'detection', 'settings', 'skill']);
+    expect(found.verdict.sentence.length).toBeGreaterThan(20);
   });
 
   it('says it in a sentence first, then lists every warning', async () => {
     const { out } = await run(recording, '--model', model);
     const lines = out.trim().split('\n');
     expect(lines[0]).toMatch(
-      /^Forcing above \d\.\d\d sd warned \d+ of \d+ reversals, 95 % interval \d+ to \d+ %, median lead \d+\.\d s, \d+\.\d false warnings an hour\.$/,
+      /^Forcing above \d\.\d+ sd warned \d+ of \d+ reversals, 95 % interval \d+ to \d+ %, median lead [\d.]+ s, [\d.]+ false warnings an hour; .+ warned \d+ with [\d.]+ s\.$/,
     );
+    expect(lines[1]).toMatch(/^(Useful|Weak|No better than|No skill|Too few events)/);
     const { warnings } = JSON.parse((await run(recording, '--model', model, '--json')).out);
     expect(lines.slice(lines.findIndex((line) => line.startsWith('at ')) + 1)).toHaveLength(warnings.length);
   });
@@ -96,24 +113,93 @@ describe('foreshift rehearse', () => {
     );
   });
 
+  it('never calls a model useful that was fitted on what is judged', async () => {
+    const used = { name: recording, sha256, from: 0, to: 3600, samples: 9000 };
+    const file = await modelFile('seen.json', {
+      provenance: { recordings: [used], program: '', fittedAt: '' },
+    });
+    const { verdict, fittedOnJudged } = JSON.parse((await run(recording, '--model', file, '--json')).out);
+    expect(fittedOnJudged).toBe(true);
+    expect(verdict.kind).not.toBe('useful');
+  });
+
+  it('searches without a model: settings, score, baselines, how many were tried, a verdict', async () => {
+    const { code, out, err } = await run(recording, ...SEARCH, '--json');
+    expect([code, err]).toEqual([0, '']);
+    const found = JSON.parse(out);
+    const keys = ['switches', 'warnings', 'score', 'baselines', 'settings', 'tried', 'verdict'];
+    expect(Object.keys(found)).toEqual(expect.arrayContaining(keys));
+    expect(found.tried).toBeGreaterThan(1000);
+    expect(Object.keys(found.baselines)).toEqual(expect.arrayContaining(BASELINES));
+    const judged = found.warnings.filter(
+      ({ at, part }: { at: number; part: string }) =>
+        part === 'judged' && at >= found.recordings[0].judgedFrom + 20 - 0.2,
+    );
+    expect(judged).toHaveLength(found.score.warnings.total);
+    for (const key of ['delays', 'rank', 'variable', 'threshold', 'rearm', 'onDelay', 'holdOff'])
+      expect(found.settings).toHaveProperty(key);
+  });
+
+  it('writes the chosen settings as a model that says the same when it is rehearsed', async () => {
+    const out = join(folder, 'chosen.json');
+    const searched = await run(recording, ...SEARCH, '--json', '--out', out);
+    const again = await run(recording, '--model', out, '--json');
+    const [first, second] = [JSON.parse(searched.out), JSON.parse(again.out)];
+    expect(second.score).toEqual(first.score);
+    expect(second.warnings).toEqual(first.warnings);
+    const written = modelFromJson(await readFile(out, 'utf8'));
+    expect(written.score).toEqual(first.score);
+    expect(written.provenance.recordings[0]).toMatchObject({ name: recording, sha256 });
+    expect(written.provenance.recordings[0]!.to).toBeLessThan(1801);
+    expect(second.fittedOnJudged).toBe(false);
+    const { threshold } = written.rule!;
+    const point = written.operating!.find((one) => one.threshold === threshold)!;
+    expect(point.detection).toBe(first.score.detection.value);
+    expect(point.falsePerHour).toBe(first.score.falsePerHour.value);
+  });
+
   it.each([
     [['--model', model], 'no recording is named'],
-    [[recording], 'no model is named'],
+    [[recording], 'no channel and no model is named'],
+    [[recording, '--channel', 'Loop B'], 'nothing says what a switch is'],
+    [[recording, '--channel', 'Loop B', '--regime', 'sides:-1,1'], '--least-lead'],
     [[recording, '--model', join(folder, 'none.json')], 'cannot be read'],
     [[join(folder, 'none.csv'), '--model', model], 'there is no file'],
     [[recording, '--model', model, '--channel', 'Loop Z'], 'no channel Loop Z, it has Loop B'],
-    [[recording, '--model', model, '--come-true', '0.8'], 'belongs to the search for settings'],
+    [[recording, ...SEARCH, '--channel', 'Loop Z'], 'no channel Loop Z, it has Loop B'],
+    [[recording, '--model', model, '--come-true', '1.8'], 'a share from 0 to 1'],
     [[recording, '--model', model, '--variable', 'best'], 'belongs to the search for settings'],
+    [[recording, ...SEARCH, '--variable', 'prospect'], 'not made by this version'],
+    [[recording, ...SEARCH, '--variable', 'mood'], 'expected forcing, level or best'],
     [[recording, '--model', model, '--horizon', '5'], 'lengthen the horizon'],
+    [[recording, ...SEARCH, '--least-lead', '30'], 'raise --horizon'],
     [[recording, '--model', model, '--rearm', '99'], 're-arm'],
     [[recording, '--model', model, '--tune-part', '1'], 'expected a share from 0 to below 1'],
+    [[recording, ...SEARCH, '--tune-part', '0'], 'expected a share from 0.1 to 0.9'],
     [[recording, '--model', model, '--regime', 'sides:1'], 'sides:LOW,HIGH'],
+    [[recording, ...SEARCH, '--regime', 'sides:-50,50'], 'never finds a switch'],
+    [[recording, ...SEARCH, '--horizon', '900'], 'shorten the horizon'],
+    [[recording, ...SEARCH, '--out', join(folder, 'no', 'such', 'folder.json')], 'cannot be written'],
     [[recording, '--model', model, '--nonsense'], 'foreshift rehearse --help'],
   ])('answers %j in a sentence and with exit code 2', async (argv, words) => {
     const { code, out, err } = await run(...argv);
     expect(err).toContain(words);
     expect(err.trim().split('\n')).toHaveLength(1);
     expect([code, out]).toEqual([2, '']);
+  });
+
+  it('says when all switches lie in the tuning part, or a recording has no full window', async () => {
+    const quiet = series.values.map((value, i) => (series.times[i]! < 1500 ? value : Math.abs(value) + 1));
+    const file = join(folder, 'quiet.csv');
+    const channels = [{ ...series, values: quiet, unit: 'K' }];
+    await writeFile(file, writeCsv({ name: '', sha256: '', channels }));
+    expect((await run(file, ...SEARCH)).err).toMatch(/all \d+ switches lie in the tuning part/);
+    const short = join(folder, 'short.csv');
+    const few = { ...series, times: series.times.slice(0, 3), values: series.values.slice(0, 3), unit: 'K' };
+    await writeFile(short, writeCsv({ name: '', sha256: '', channels: [few] }));
+    const { code, err } = await run(recording, short, ...SEARCH);
+    expect(err).toMatch(/short.csv has no full window/);
+    expect(code).toBe(2);
   });
 
   it('asks for a rule when the model has none and the options give none', async () => {
