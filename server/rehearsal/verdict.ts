@@ -1,7 +1,7 @@
 import type { Ceiling, Verdict } from '../../shared-types/rehearsal.ts';
 import type { Score } from '../../shared-types/score.ts';
 import { LEAST_PERFECT_SKILL } from './perfect.ts';
-import { counted, percent, pluralOf, short } from './words.ts';
+import { counted, percent, pluralOf, short, spanWords } from './words.ts';
 
 /** Fewer judged switches than this say too little. */
 export const FEWEST_EVENTS = 10;
@@ -75,7 +75,7 @@ function tooFewWords({ perHour, judgedShare, word }: VerdictTask, total: number)
   const rate = perHour * judgedShare;
   const missing = FEWEST_EVENTS - total;
   const hours =
-    rate > 0 ? `; at this rate about ${short(missing / rate)} more hours of recording are needed` : '';
+    rate > 0 ? `; at this rate about ${spanWords((3600 * missing) / rate)} more of recording are needed` : '';
   return `Too few events: ${counted(total, word)} judged, at least ${FEWEST_EVENTS} are needed to say anything${hours}.`;
 }
 
