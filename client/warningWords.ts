@@ -7,7 +7,6 @@ import {
   counted,
   intervalText,
   minuteText,
-  plural,
   shareText,
   spanText,
 } from './words.ts';
@@ -162,9 +161,4 @@ export function howToWatch(channel: string): { fit: string; watch: string } {
     fit: `npx foreshift fit ${stored} --channel ${name} --regime sides:LOW,HIGH --least-lead SECONDS --horizon SECONDS --out model.json`,
     watch: `npx foreshift watch --model model.json --channel ${name}`,
   };
-}
-
-/** "reversals": what the watch warns of, many of them. */
-export function switchWords(watch: WatchState): string {
-  return plural(watch.switchWord);
 }

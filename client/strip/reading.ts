@@ -3,8 +3,13 @@ import { headline, thresholdText } from '../warningWords.ts';
 import { clockText, decimalsFor, numberText, spanText } from '../words.ts';
 import { type StripView, spokenFor } from './view.ts';
 
-/** What is on the paper at a time, in words: "14:31:20.4, 47 s ago: +2.31 K, forcing 0.42 sd". */
-export function readingText(view: StripView, time: number, perSecond: number): string {
+/**
+ * What is on the paper at a time, in words: "14:31:20.4, 47 s ago: +2.31 K, forcing 0.42 sd".
+ *
+ * @param perSecond CSS pixels a second, which set how near a sample must be
+ * @param signed    positive values carry their sign
+ */
+export function readingText(view: StripView, time: number, perSecond: number, signed: boolean): string {
   const reach = Math.max(8 / perSecond, 2 * (view.channel.interval ?? 0));
   const signal = nearest(view.signal, time, reach);
   const trace = nearest(view.trace, time, reach);
@@ -13,7 +18,7 @@ export function readingText(view: StripView, time: number, perSecond: number): s
   const value =
     signal === null
       ? 'no sample'
-      : `${numberText(signal.value, decimalsFor(Math.abs(signal.value) || 1), signal.value > 0)}${unit}`;
+      : `${numberText(signal.value, decimalsFor(Math.abs(signal.value) || 1), signed)}${unit}`;
   const variable = view.watch?.rule?.variable ?? 'forcing';
   const watched =
     view.watch === null

@@ -29,7 +29,7 @@ export interface Strip {
 }
 
 /** Room the words right of now need beside a span, CSS pixels. */
-const WORDS_WIDTH = 236;
+const WORDS_WIDTH = 256;
 
 /** Creates a strip; it is drawn once it has a size. */
 export function createStrip(key: StripKey, actions: StripActions): Strip {
@@ -100,7 +100,7 @@ export function createStrip(key: StripKey, actions: StripActions): Strip {
         selection.style.width = `${(drag.fromAgo - drag.toAgo) * perZoomed}px`;
       }
       const wanted = readAgo !== null && drag === null && root.dataset.read === 'yes';
-      say(reading, wanted ? readingText(view, view.to - readAgo, perZoomed) : null);
+      say(reading, wanted ? readingText(view, view.to - readAgo, perZoomed, pair.valueRange()[0] < 0) : null);
       if (wanted) mark(reading, 'data-side', readAgo * perZoomed < area() / 2 ? 'left' : 'right');
       if (wanted) reading.style.transform = `translateX(${at(readAgo)}px)`;
     },

@@ -118,21 +118,20 @@ export function mountWatch(
     attention.call(warning, view.state, now);
   };
 
+  // who asked for less motion gets paper that moves once a second, while hands are still followed at once
+  const still = matchMedia('(prefers-reduced-motion: reduce)');
+  const moment = () => (still.matches ? Math.floor(monotonic()) : monotonic());
   const tick = () => {
-    view.monotonic = monotonic();
+    view.monotonic = moment();
     view.today = timeAt(server, view.monotonic) ?? 0;
-    view.lost = view.state.welcomed && (!connected || view.monotonic - heard > LOST_AFTER);
-    frame.update(view, connected, view.monotonic - heard);
+    view.lost = view.state.welcomed && (!connected || monotonic() - heard > LOST_AFTER);
+    frame.update(view, connected, monotonic() - heard);
     attention.show(waiting().map((each) => titleOf(each)));
   };
   setInterval(tick, 250);
-  const still = matchMedia('(prefers-reduced-motion: reduce)');
-  let stillSince = 0;
-  const animate = (at: number) => {
+  const animate = () => {
     requestAnimationFrame(animate);
-    if (still.matches && at - stillSince < 1000) return;
-    stillSince = at;
-    view.monotonic = monotonic();
+    view.monotonic = moment();
     strips.animate();
   };
   requestAnimationFrame(animate);
