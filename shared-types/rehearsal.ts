@@ -119,7 +119,10 @@ export const WARNING_OUTCOMES: readonly WarningOutcome[] = [
 ];
 export const SWITCH_OUTCOMES: readonly SwitchOutcome[] = ['pending', 'warned', 'late', 'missed', 'blind'];
 
-/** One window and rank that was tried, with its best rule on the tuning part. */
+/**
+ * One window and rank that was tried, with its best rule on the tuning part. `skill` is on folds that did not choose the
+ * threshold, averaged with the windows next to it.
+ */
 export interface TriedSetting {
   delays: number;
   window: number;

@@ -1,3 +1,4 @@
+import { runningAutocorrelationInto, runningVarianceInto } from '../signal/slidingIndicators.ts';
 import type { GriddedRecording, GriddedRun } from './gridded.ts';
 import { bothDirections, type Signal } from './signal.ts';
 import { type Places, type Trace, withSummary } from './trace.ts';
@@ -26,13 +27,20 @@ export type Family = readonly Signal[];
  * switch, and a clock. (The level itself is a variable of the watch and comes with those.)
  */
 export function baselineFamilies(scales: BaselineScales): Family[] {
-  const { interval, scale, mean, most } = scales;
+  const { interval, scale, horizon, mean, most } = scales;
   const short = windowsWithin([2, scale / 2, scale], 2, most);
+  const long = windowsWithin([2 * scale, 8 * scale, 4 * horizon], 8, most);
   return [
     ...familiesOf('distance from the mean', [1], interval, (run) =>
       run.values[0]!.map((value) => Math.abs(value - mean)),
     ),
     ...familiesOf('rate of change', short, interval, (run, lag) => rateOf(run.values[0]!, lag, interval)),
+    ...familiesOf('running variance', long, interval, (run, window) =>
+      indicatorOf(runningVarianceInto, run, window),
+    ),
+    ...familiesOf('lag-1 autocorrelation', long, interval, (run, window) =>
+      indicatorOf(runningAutocorrelationInto, run, window),
+    ),
     [sinceSwitch()],
     clocks(scales),
   ];
@@ -68,6 +76,12 @@ function perRun({ runs }: GriddedRecording, places: Places, of: (run: GriddedRun
   const value = new Float64Array(places.time.length).fill(Number.NaN);
   for (const run of runs) value.set(of(run), run.firstStep);
   return withSummary(value, places);
+}
+
+function indicatorOf(indicator: typeof runningVarianceInto, run: GriddedRun, window: number): Float64Array {
+  const out = new Float64Array(run.newest.length);
+  indicator(run.values[0]!, window, out);
+  return out;
 }
 
 function rateOf(values: Float64Array, lag: number, interval: number): Float64Array {

@@ -7,7 +7,7 @@ import type { Prepared } from './prepare.ts';
 import type { RehearsalTask } from './task.ts';
 import { choosePoint } from './threshold.ts';
 import { delaysToTry } from './toTry.ts';
-import { freeGround, type Ground, sweep, type Tuned, thresholdsOf, triedOn } from './tune.ts';
+import { freeGround, type Ground, PLAIN, sweep, type Tuned, thresholdsOf, triedOn } from './tune.ts';
 import {
   chooseVariable,
   forcingSignal,
@@ -84,8 +84,11 @@ function settle(ground: Ground, model: Model, chosen: TunedVariable, held: numbe
   const signal = signalOf(model, chosen.signal.name);
   const tried = triedOn(ground, signal);
   const thresholds = held === null ? thresholdsOf(signal, tried, ROWS) : [held];
-  const best = choosePoint(sweep(ground, tried, signal, chosen.manner, thresholds), ground.ceiling);
-  return best === null ? { ...chosen, signal } : { ...chosen, signal, ...best };
+  const plainly = chosen.weak && ground.ceiling === null;
+  const points = sweep(ground, tried, signal, chosen.manner, thresholds);
+  const best = choosePoint(points, plainly ? PLAIN : ground.ceiling);
+  if (best === null) return { ...chosen, signal };
+  return { ...chosen, signal, point: best.point, weak: plainly || best.weak };
 }
 
 const signalOf = (model: Model, name: string) =>
@@ -115,7 +118,8 @@ export function givenModel(model: Model, ground: Ground): Settled {
   }
   const point = { ...best.point, rule };
   const { delays, rank } = model;
-  const chosen = { signal, manner, merit: point, point, weak: best.weak, delays, rank };
+  const plain = { merit: point, point };
+  const chosen = { signal, manner, merit: point, point, weak: best.weak, plain, delays, rank };
   const others = tuneLevels(freeGround(ground), model, null).levels.filter((one) => one.signal.name !== name);
   return { model, chosen, others, rule, weak: best.weak, pairs: [], tried: 1 };
 }

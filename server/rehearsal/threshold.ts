@@ -229,7 +229,8 @@ export function choosePoint(points: readonly OperatingPoint[], ceiling: Ceiling 
   return point === null ? null : { point, weak: within.length === 0 };
 }
 
-function isWithin(point: OperatingPoint, ceiling: Ceiling | null): boolean {
+/** Whether a point keeps within a ceiling; without one: whether half of its warnings come true. */
+export function isWithin(point: OperatingPoint, ceiling: Ceiling | null): boolean {
   const { falsePerHour, cameTrue } = ceiling ?? { falsePerHour: null, cameTrue: null };
   const leastTrue = cameTrue ?? (falsePerHour === null ? 0.5 : 0);
   if (falsePerHour !== null && point.falsePerHour > falsePerHour) return false;

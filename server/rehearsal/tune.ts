@@ -9,6 +9,7 @@ import {
   type Ceiling,
   choosePoint,
   createTried,
+  isWithin,
   type OperatingPoint,
   spreadThresholds,
   type Tried,
@@ -39,6 +40,8 @@ export interface Tuned {
   /** the threshold chosen on all folds, and how it does on them; weak: none was within the ceiling */
   point: OperatingPoint;
   weak: boolean;
+  /** the same for the threshold of the plain maximum of skill */
+  plain: { merit: OperatingPoint; point: OperatingPoint };
 }
 
 /** Ground for trying signals on recordings. */
@@ -113,20 +116,55 @@ export function tune(
   for (const manner of manners) {
     const points = sweep(ground, tried, signal, manner, thresholds);
     rules += points.length;
-    const merit = heldOutPoint(points, ground.ceiling, ground.spans.interval);
-    const chosen = choosePoint(points, ground.ceiling);
-    if (merit !== null && chosen !== null) tuned.push({ signal, manner, merit, ...chosen });
+    const strict = choiceOf(ground, points, ground.ceiling);
+    const plain = choiceOf(ground, points, PLAIN);
+    if (strict !== null && plain !== null) tuned.push({ signal, manner, ...strict, plain });
   }
   return { tuned, rules };
 }
 
-/** The best by what choosing it is worth; null of none. */
-export function bestTuned(tuned: readonly Tuned[], ceiling: Ceiling | null): Tuned | null {
+/** No ceiling at all, so that the plain maximum of skill is chosen. */
+export const PLAIN: Ceiling = { falsePerHour: null, cameTrue: 0 };
+
+function choiceOf({ spans }: Ground, points: readonly OperatingPoint[], ceiling: Ceiling | null) {
+  const merit = heldOutPoint(points, ceiling, spans.interval);
+  const chosen = choosePoint(points, ceiling);
+  return merit === null || chosen === null ? null : { merit, ...chosen };
+}
+
+/**
+ * The best by what choosing it is worth; null of none. With a ceiling, the best within it. Without one, the best of
+ * which half of the warnings come true and whose skill, on folds that did not choose the threshold, is more than luck
+ * (a handful of lucky warnings is not); if there is none, the best plain maximum, called weak.
+ */
+export function bestTuned<T extends Tuned>(tuned: readonly T[], ceiling: Ceiling | null): T | null {
+  if (ceiling !== null) return bestBy(tuned, ceiling);
+  const sound = tuned.filter(({ merit, weak }) => !weak && isWithin(merit, null) && isSound(merit));
+  if (sound.length > 0) return bestBy(sound, null);
+  return bestBy(tuned.map(resolvedPlain), PLAIN);
+}
+
+const resolvedPlain = <T extends Tuned>(one: T): T => ({ ...one, ...one.plain, weak: true });
+
+function bestBy<T extends Tuned>(tuned: readonly T[], ceiling: Ceiling | null): T | null {
   const best = choosePoint(
     tuned.map(({ merit }) => merit),
     ceiling,
   );
   return best === null ? null : (tuned.find(({ merit }) => merit === best.point) ?? null);
+}
+
+/**
+ * Whether a skill is more than luck: above two standard errors of the detection, two warned and two missed switches
+ * added.
+ *
+ * @see Agresti, Coull 1998, The American Statistician 52, 119 (the four added)
+ */
+function isSound({ skill, tally }: OperatingPoint): boolean {
+  const { warned, late, missed } = tally.switches;
+  const total = warned + late + missed + 4;
+  const share = (warned + 2) / total;
+  return skill > 2 * Math.sqrt((share * (1 - share)) / total);
 }
 
 /** Standard deviation of a signal's values, of every second, third … of many. */

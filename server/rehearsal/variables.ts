@@ -9,6 +9,7 @@ import {
   freeGround,
   type Ground,
   mannersOn,
+  PLAIN,
   type Tuned,
   thresholdsOf,
   triedOn,
@@ -69,12 +70,14 @@ export function searchVariables(
       pairs.push(...found.tuned.map((one) => ({ ...one, delays: window, rank: forcing.rank })));
     }
   });
-  const refined = shortList(pairs, ceiling).flatMap((pair, i, { length }) => {
+  const evened = evenedOut(pairs);
+  const refined = shortList(evened, ceiling).flatMap((pair, i, { length }) => {
     progress(0.8 + (0.15 * i) / length, 're-arm, on-delay and hold-off');
     const { projected } = forcings.find(({ delays, rank }) => delays === pair.delays && rank === pair.rank)!;
     const found = tuneSignal(ground, forcingSignal(projected), request.threshold, Number.POSITIVE_INFINITY);
     tried += found.rules;
-    return [pair, ...found.tuned.map((one) => ({ ...one, delays: pair.delays, rank: pair.rank }))];
+    const raw = pairs.find(({ delays, rank }) => delays === pair.delays && rank === pair.rank)!;
+    return [pair, ...found.tuned.map((one) => shifted({ ...raw, ...one }, raw, pair))];
   });
   progress(0.95, 'plain levels');
   const { levels, rules } =
@@ -82,8 +85,8 @@ export function searchVariables(
       ? tuneLevels(ground, level, request.threshold)
       : tuneLevels(freeGround(ground), level, null);
   tried += rules;
-  const forcing = bestTuned(refined.length > 0 ? refined : pairs, ceiling) as TunedVariable | null;
-  const all = [...bestOfPairs(pairs, refined, ceiling), ...levels];
+  const forcing = bestTuned(refined, ceiling);
+  const all = [...bestOfPairs(evened, refined, ceiling), ...levels];
   return { forcing, levels, pairs: all.map((one) => toTriedSetting(one, spans.interval)), tried };
 }
 
@@ -129,13 +132,51 @@ function tuneSignal(ground: Ground, signal: Signal, held: number | null, manners
   return tune(ground, tried, signal, all.slice(0, manners), thresholds);
 }
 
+/**
+ * The skill of each pair averaged with that of the next shorter and longer window at the same rank, with weights
+ * (1, 2, 1)/4: of many pairs one is always lucky, while a window that really serves has neighbours that serve nearly as
+ * well. Own; measured on noise-driven double wells, where the single best of some fifty pairs kept nothing of its skill.
+ */
+function evenedOut(pairs: readonly TunedVariable[]): TunedVariable[] {
+  return pairs.map((pair) => {
+    const row = pairs.filter(({ rank }) => rank === pair.rank);
+    const at = row.indexOf(pair);
+    const near = [row[at - 1], pair, pair, row[at + 1]].filter((one) => one !== undefined);
+    const mean = (skill: (one: TunedVariable) => number) =>
+      near.reduce((sum, one) => sum + skill(one), 0) / near.length;
+    return withSkills(
+      pair,
+      mean(({ merit }) => merit.skill),
+      mean(({ plain }) => plain.merit.skill),
+    );
+  });
+}
+
+function withSkills(one: TunedVariable, skill: number, plainSkill: number): TunedVariable {
+  const { merit, plain } = one;
+  return {
+    ...one,
+    merit: { ...merit, skill },
+    plain: { ...plain, merit: { ...plain.merit, skill: plainSkill } },
+  };
+}
+
+/** A manner of a pair, evened out by as much as the usual manner of the pair was. */
+function shifted(one: TunedVariable, raw: TunedVariable, evened: TunedVariable): TunedVariable {
+  return withSkills(
+    one,
+    one.merit.skill + evened.merit.skill - raw.merit.skill,
+    one.plain.merit.skill + evened.plain.merit.skill - raw.plain.merit.skill,
+  );
+}
+
 function shortList(pairs: readonly TunedVariable[], ceiling: Ceiling | null): TunedVariable[] {
   const left = [...pairs];
   const list: TunedVariable[] = [];
   while (left.length > 0 && list.length < REFINED) {
-    const best = bestTuned(left, ceiling) as TunedVariable;
-    list.push(best);
-    left.splice(left.indexOf(best), 1);
+    const { delays, rank } = bestTuned(left, ceiling)!;
+    const place = left.findIndex((one) => one.delays === delays && one.rank === rank);
+    list.push(...left.splice(place, 1));
   }
   return list;
 }
@@ -148,7 +189,7 @@ function bestOfPairs(
 ): TunedVariable[] {
   return pairs.map((pair) => {
     const same = refined.filter(({ delays, rank }) => delays === pair.delays && rank === pair.rank);
-    return same.length === 0 ? pair : (bestTuned(same, ceiling) as TunedVariable);
+    return bestTuned(same.length === 0 ? [pair] : same, ceiling)!;
   });
 }
 
@@ -184,11 +225,14 @@ export function chooseVariable(
     ...(variable === 'level' || forcing === null ? [] : [forcing]),
     ...(variable === 'forcing' ? [] : levels),
   ];
+  // without a ceiling each candidate says itself whether it is weak
+  const strong = candidates.filter(({ weak }) => !weak);
+  const eligible = ceiling === null && strong.length > 0 ? strong : candidates;
   const best = choosePoint(
-    candidates.map(({ merit }) => merit),
-    ceiling,
+    eligible.map(({ merit }) => merit),
+    ceiling ?? PLAIN,
   );
-  const chosen = candidates.find(({ merit }) => merit === best?.point);
+  const chosen = eligible.find(({ merit }) => merit === best?.point);
   if (chosen !== undefined) return chosen;
   throw new InputError(
     'NOTHING_TO_WARN_OF',

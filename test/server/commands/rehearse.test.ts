@@ -33,6 +33,10 @@ const BASELINES = [
   'distance from the mean falling',
   'rate of change rising',
   'rate of change falling',
+  'running variance rising',
+  'running variance falling',
+  'lag-1 autocorrelation rising',
+  'lag-1 autocorrelation falling',
   'time since the last switch',
   'a clock',
 ];
