@@ -51,6 +51,14 @@ describe('a model file', () => {
     expect(modelFromJson(modelToJson(model))).toEqual(model);
   });
 
+  it('carries the operating points of a rehearsal, and none when there are none', () => {
+    const known = { threshold: 1.5, rearm: 1.2, falsePerHour: 0.7, detection: 0.9, cameTrue: 0.8 };
+    const unknown = { threshold: 9, rearm: 7, falsePerHour: null, detection: null, cameTrue: null };
+    const rehearsed = { ...complete, operating: [known, unknown] };
+    expect(modelFromJson(modelToJson(rehearsed))).toEqual(rehearsed);
+    expect(modelFromJson(modelToJson(complete))).not.toHaveProperty('operating');
+  });
+
   it('encodes numbers as little-endian float64 in base64, as a common decoder reads them', () => {
     const values = Float64Array.of(1, -0, Math.PI, 5e-324, 1.7976931348623157e308);
     const bytes = Buffer.from(encodeFloats(values), 'base64');
@@ -71,6 +79,8 @@ describe('a model file', () => {
     expect(old.rank).toBe(3);
     expect(old.coordinates.length).toBe(18);
     expect(old.rule!.horizon).toBe(20);
+    // older than operating points
+    expect(old).not.toHaveProperty('operating');
   });
 
   it.each([
@@ -84,6 +94,7 @@ describe('a model file', () => {
     ['MODEL_DAMAGED', changed({ version: 'one' })],
     ['MODEL_DAMAGED', changed({ interval: null })],
     ['MODEL_DAMAGED', changed({ diagnostics: null })],
+    ['MODEL_DAMAGED', changed({ operating: [{ threshold: 'high' }] })],
     ['NOT_A_MODEL', '{"some": "other document"}'],
     ['NOT_A_MODEL', 'null'],
     ['MODEL_NEWER', changed({ version: 2 })],

@@ -214,6 +214,18 @@ describe('what a rehearsal honours', () => {
     expect(found.score.watchedSeconds).toBeLessThan(result.score.watchedSeconds - 590);
   });
 
+  it('watches several channels in one model, and reads switches from another channel', () => {
+    const [main, side] = [loop('rehearsed', 3600), loop('rehearsed', 3600)];
+    const { gaussian } = createRandom('side');
+    const other = { ...side, channel: 'Side', values: side.values.map((value) => -2 * value + gaussian()) };
+    const wanted = { channels: ['Loop A', 'Side'], regimeChannel: 'Side', regime: 'sides:-1.5,1.5' };
+    const two = taskOf([[main, other]], { ...wanted, variable: 'forcing', windows: [4, 8], ranks: [2, 3] });
+    const found = runRehearsal(two);
+    expect(modelFromJson(found.model).channels.map(({ channel }) => channel)).toEqual(['Loop A', 'Side']);
+    expect(live(two, found, found.chosenRow).score).toEqual(found.score);
+    expect(found.switches.length).toBeGreaterThan(30);
+  });
+
   it('judges a given model without searching, never useful where it was fitted', () => {
     const model = modelFromJson(result.model);
     const given = runRehearsal({ ...task, model });
