@@ -34,8 +34,9 @@ export interface SearchedVariables {
 
 /** Pairs whose re-arm, on-delay and hold-off are searched. */
 const REFINED = 4;
-/** Thresholds in that search. */
+/** Thresholds in that search, and of every pair where the tuning part has more steps than this. */
 const REFINED_THRESHOLDS = 32;
+const LONG = 500_000;
 
 /**
  * Searches windows × ranks × thresholds with the usual manner (re-arm, on-delay, hold-off), then the manners of the
@@ -127,7 +128,8 @@ export function tuneLevels(
 function tuneSignal(ground: Ground, signal: Signal, held: number | null, manners: number) {
   const tried = triedOn(ground, signal);
   const all = mannersOn(ground, tried, signal);
-  const count = all.length > 1 && manners > 1 ? REFINED_THRESHOLDS : undefined;
+  const long = tried.reduce((sum, { steps }) => sum + steps.count, 0) > LONG;
+  const count = long || (all.length > 1 && manners > 1) ? REFINED_THRESHOLDS : undefined;
   const thresholds = held === null ? thresholdsOf(signal, tried, count) : [held];
   return tune(ground, tried, signal, all.slice(0, manners), thresholds);
 }

@@ -117,6 +117,14 @@ describe('foreshift rehearse', () => {
     );
   });
 
+  it('judges all of a recording with --tune-part 0', async () => {
+    const argv = [recording, '--model', model, '--tune-part', '0', '--json'];
+    const found = JSON.parse((await run(...argv)).out);
+    expect(found.score.warnings.total).toBe(found.warnings.length);
+    expect(found.score.switches.total).toBe(found.switches.length);
+    expect(found.verdict.kind).toMatch(/^(weak|useful|no better than)$/);
+  });
+
   it('never calls a model useful that was fitted on what is judged', async () => {
     const used = { name: recording, sha256, from: 0, to: 3600, samples: 9000 };
     const file = await modelFile('seen.json', {
