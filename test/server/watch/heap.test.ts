@@ -29,7 +29,7 @@ it('leaves the heap flat over a million samples: what a watch remembers does not
     regimeChannel: null,
   });
   let warnings = 0;
-  const frame = { channel: 'x', t0: 0, dt: 0.02, times: null, values: new Float64Array(0) };
+  const frame = { channel: 'x', t0: 0, dt: 0.02, times: null, values: new Float64Array(0) as Float64Array };
   const push = (from: number, to: number) => {
     const happenings: Happening[] = [];
     for (let i = from; i < to; i += 100) {
