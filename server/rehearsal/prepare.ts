@@ -34,7 +34,7 @@ const SHORTEST_WINDOW = 4;
 /**
  * Puts a task's recordings on the grid, finds their switches and parts them.
  *
- * @throws InputError in a sentence: BAD_REGIME, SPANS, NO_SUCH_CHANNEL, NO_FULL_WINDOW, NO_SWITCH, NO_SWITCH_TO_TUNE,
+ * @throws InputError in a sentence: BAD_REGIME, SPANS, BAD_RULE, NO_SUCH_CHANNEL, NO_FULL_WINDOW, NO_SWITCH, NO_SWITCH_TO_TUNE,
  *         NO_SWITCH_TO_JUDGE
  */
 export function prepareTask(task: RehearsalTask): Prepared {
@@ -45,6 +45,7 @@ export function prepareTask(task: RehearsalTask): Prepared {
   const gapIntervals = model?.gapIntervals ?? task.gapIntervals ?? 3;
   const spans = spansOf(request, interval);
   checkSpans(request, spans);
+  checkRearm(request);
   const settings = {
     channels: request.channels,
     interval,
@@ -100,6 +101,15 @@ function checkSpans({ leastLead, horizon }: RehearsalRequest, spans: GradingSpan
   throw new InputError(
     'SPANS',
     `the least lead (${leastLead} s) is not shorter than the horizon (${horizon} s) by at least one interval (${spans.interval} s), so no warning could ever come true; lengthen the horizon or shorten the least lead`,
+  );
+}
+
+/** A level may fall, and then re-arm lies above; which way is only known after the search. */
+function checkRearm({ variable, threshold, rearm }: RehearsalRequest): void {
+  if (variable === 'level' || threshold === null || rearm === null || rearm <= threshold) return;
+  throw new InputError(
+    'BAD_RULE',
+    `re-arm (${rearm}) lies above the threshold (${threshold}), so the rule could warn without pause; lower it, to 0.8 times the threshold, say`,
   );
 }
 

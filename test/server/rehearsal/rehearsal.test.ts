@@ -263,6 +263,7 @@ describe('what a rehearsal refuses, in a sentence', () => {
     ['a rule that never fires', { regime: 'sides:-50,50' }, 'NO_SWITCH'],
     ['a rule that is none', { regime: 'sides:1' }, 'BAD_REGIME'],
     ['a least lead beyond the horizon', { leastLead: 20, horizon: 10 }, 'SPANS'],
+    ['re-arm above the threshold', { threshold: 1, rearm: 2 }, 'BAD_RULE'],
     ['overlapping events', { horizon: 900, leastLead: 1 }, 'EVENTS_OVERLAP'],
     ['a missing channel', { channels: ['Loop Z'] }, 'NO_SUCH_CHANNEL'],
     ['a missing regime channel', { regimeChannel: 'Loop Z' }, 'NO_SUCH_CHANNEL'],
