@@ -3,6 +3,10 @@
  * error diagram. With τ the fraction of time in alarm and ν the fraction of events missed, a warner without knowledge
  * lies on ν = 1 − τ, whose ends are (0, 1), never an alarm, and (1, 0), always one. Formulas from memory, identities
  * exact; skill here is the height above that line, 1 − ν − τ.
+ *
+ * The chance of at least h of N events in alarm without knowledge, Σ C(N, i) τⁱ (1 − τ)^(N−i) from h to N, is also in
+ * J. D. Zechar, T. H. Jordan (2008), Geophysical Journal International 172, 715–724 (from memory); its values are
+ * recomputed, to all digits given.
  */
 import { describe, expect, it } from 'vitest';
 import {
@@ -13,6 +17,7 @@ import {
   skillOf,
   tauOf,
 } from '../../server/rehearsal/tally.ts';
+import { molchanSignificance } from '../../server/rehearsal/verification.ts';
 import { createRandom } from '../../server/rigs/random.ts';
 
 const COUNT = 60_000;
@@ -67,4 +72,32 @@ describe('Molchan 1991: the error diagram', () => {
       expect(tauOf(tally)).toBeLessThan(0.99);
     },
   );
+});
+
+describe('Molchan 1991: significance of a point of the diagram', () => {
+  it.each([
+    [10, 5, 0.2, 0.0327934976],
+    [7, 5, 0.3, 0.0287955],
+    [15, 4, 0.1, 0.05555563000753602],
+    [20, 20, 0.5, 9.5367431640625e-7],
+  ])('of %i events, %i in alarm, for %d of the time: %d', (events, warned, tau, chance) => {
+    expect(Math.abs(molchanSignificance(warned, events, tau) / chance - 1)).toBeLessThan(1e-12);
+  });
+
+  it('is the binomial tail summed term by term, for many events too', () => {
+    const events = 400;
+    for (const tau of [0.01, 0.2, 0.5, 0.9]) {
+      const terms: number[] = [];
+      let logTerm = events * Math.log1p(-tau);
+      for (let i = 0; i <= events; i++) {
+        terms.push(Math.exp(logTerm));
+        logTerm += Math.log((events - i) / (i + 1)) + Math.log(tau) - Math.log1p(-tau);
+      }
+      for (const warned of [0, 1, 4, 80, 200, 360, 400]) {
+        const sum = terms.slice(warned).reduceRight((total, term) => total + term, 0);
+        const found = molchanSignificance(warned, events, tau);
+        expect(Math.abs(found - sum)).toBeLessThan(1e-11 * Math.max(sum, 1e-3));
+      }
+    }
+  });
 });
