@@ -229,6 +229,9 @@ export const Condition = z.object({
   level: z.number().finite(),
 });
 export type Condition = z.infer<typeof Condition>;
+export interface StoredCondition extends Condition {
+  id: number;
+}
 
 /** A card for one switch: the last moments before it. */
 export interface SwitchCard {
@@ -248,6 +251,8 @@ export interface SwitchCard {
   value: Float64Array;
   /** the strictest threshold that would have caught it in time, what that would have cost; null: none would */
   catching: { threshold: number; falsePerHour: number; cameTrue: number | null } | null;
+  /** why it is not known what another threshold would have cost, as the end of a sentence; null or absent: it is known */
+  notKnown?: string | null;
 }
 
 /** A recording being played into this server's own ingest. */
