@@ -67,7 +67,11 @@ export interface LogEntry {
     | 'watch'
     | 'server'
     | 'note'
-    | 'likeness';
+    | 'likeness'
+    /** a stretch or a condition is left out, or no longer */
+    | 'mark'
+    | 'rehearsal'
+    | 'play';
   channel: string | null;
   watch: string | null;
   by: string | null;

@@ -134,6 +134,10 @@ export interface WatchState {
   /** words for the two regimes and the switch, for headlines: "reversal" */
   switchWord: string;
   sight: Sight;
+  /** why the newest samples do not count, in words: "calibration", "bath above 30"; null: they do */
+  leftOut: string | null;
+  /** a silent channel of a condition that samples wait for, because only it can tell whether they count; null: none */
+  waitsFor: string | null;
   likeness: Likeness;
   /** newest value of the variable and the channel time it is stamped with */
   value: number | null;

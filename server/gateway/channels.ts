@@ -58,6 +58,8 @@ export interface Channels {
   hole(channel: string, frames: number): void;
   refused(channel: string, reason: string): void;
   newest(channel: string): number | null;
+  /** time of the newest sample and the newest value; null before there is one */
+  newestSample(channel: string): { time: number; value: number } | null;
   /** ordinal of the next sample to be stored */
   samples(channel: string): number;
   silent(channel: string, moment: Moment): boolean;
@@ -256,6 +258,10 @@ export function createChannels(): Channels {
       channel.refusal = reason;
     },
     newest: (name) => channels.get(name)?.newest ?? null,
+    newestSample(name) {
+      const { newest = null, value = null } = channels.get(name) ?? {};
+      return newest === null || value === null ? null : { time: newest, value };
+    },
     samples: (name) => channels.get(name)?.samples ?? 0,
     silent: (name, { monotonic }) => isSilent(get(name), monotonic),
     time: (name, serverTime) => {

@@ -7,6 +7,7 @@ import type { FrameToStore, Store } from '../store/store.ts';
 import { type Channels, createChannels, type Moment } from './channels.ts';
 import { createIngestSession, type IngestDoors, type IngestSession, type Refusal } from './ingestSession.ts';
 import { createJournal, type Journal } from './journal.ts';
+import { createLeftOut, type LeftOutRegistry } from './leftOut.ts';
 import { createRecorder, type Recorder } from './recorder.ts';
 import type { Surroundings } from './runningWatch.ts';
 import { createWatches, type Watches } from './watches.ts';
@@ -22,6 +23,8 @@ export interface TracedSteps {
 export interface Hub {
   channels: Channels;
   watches: Watches;
+  /** marks and conditions */
+  leftOut: LeftOutRegistry;
   journal: Journal;
   recorder: Recorder;
   store: Store;
@@ -86,6 +89,12 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
   const newestWarning = (await store.warnings({ newest: true, most: 1 }))[0]?.id ?? 0;
   const journal = createJournal(store, newestWarning, () => now().server, say, setTrouble);
   channels.load(await store.channels());
+  const leftOut = await createLeftOut({
+    store,
+    channels,
+    journal,
+    changed: () => watches.leftOutChanged(),
+  });
   const watches = createWatches({
     store,
     channels,
@@ -93,6 +102,8 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
     serverTime: () => now().server,
     createWatch: needs.createWatch,
     readModel: needs.readModel,
+    leftOut: leftOut.of,
+    silent: (channel) => !channels.has(channel) || channels.silent(channel, now()),
     touch: (watch) => touched$.next(`watch ${watch}`),
     traced: (watch, times, values) => traces$.next({ watch, times, values }),
     flushFrames: recorder.flush,
@@ -224,6 +235,7 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
   return {
     channels,
     watches,
+    leftOut,
     journal,
     recorder,
     store,

@@ -3,6 +3,12 @@ import type { Model } from '../../shared-types/model.ts';
 import type { SwitchEvent, Warning } from '../../shared-types/warning.ts';
 import type { WatchAction, WatchState } from '../../shared-types/watch.ts';
 import type { StoredWatch, WatchProgress } from '../store/store.ts';
+import {
+  createLeftOutGate,
+  type GateCondition,
+  type GateMark,
+  type GateState,
+} from '../watch/leftOutGate.ts';
 import type { Frame, Happening, Steps, Watch, WatchSettings, WatchSnapshot } from '../watch/types.ts';
 import { type Alarm, type AlarmEvent, alarmAfter, alarmStateOf, shelfIsOver } from './alarmState.ts';
 import type { Channels } from './channels.ts';
@@ -30,6 +36,8 @@ export interface Checkpoint {
   ordinals: Record<string, number>;
   /** least offset of each channel's clock, see clockOffset.ts */
   offsets: Record<string, number | null>;
+  /** what is known of the conditions under which samples are left out; absent before there were any */
+  gate?: GateState;
 }
 
 /** What a running watch needs of its surroundings. */
@@ -39,6 +47,10 @@ export interface Surroundings {
   /** server clock, Unix seconds */
   serverTime(): number;
   createWatch(settings: WatchSettings, snapshot?: WatchSnapshot): Watch;
+  /** what a watch of these channels has to leave out */
+  leftOut(channels: readonly string[]): { marks: GateMark[]; conditions: GateCondition[] };
+  /** nothing has come on the channel for longer than is usual, or it is not known */
+  silent(channel: string): boolean;
   /** the settings changed and must be stored */
   save(watch: StoredWatch): void;
   /** the state changed and pages should have it */
@@ -55,6 +67,8 @@ export interface RunningWatch {
   tick(): void;
   act(action: WatchAction): void;
   setUse(use: WatchState['use']): void;
+  /** marks or conditions changed: from now on they are as they are now */
+  leftOutChanged(): void;
   /** the first page has it */
   delivered(warning: number): void;
   /** what to store now, or null when nothing changed since */
@@ -125,7 +139,8 @@ export function createRunningWatch(
   const { rule } = model;
   const trigger = rule !== null && rule.leastLead < memo.reaction;
   let watch = around.createWatch(settings, checkpoint?.snapshot);
-  let wanted = new Set(watch.wants());
+  let wanted = watch.wants();
+  let gate = createLeftOutGate(wanted, checkpoint?.gate);
   const happenings: Happening[] = [];
   const trace = createTraceBuffer();
   const warnings = new Map<number, Warning>();
@@ -248,7 +263,7 @@ export function createRunningWatch(
         const seconds = Number((happening.to - happening.from).toPrecision(3));
         return log(
           'gap',
-          `no sample for ${seconds} s; blind until the window is full again`,
+          `${leftOutWords(gate.why(happening.from, happening.to)) ?? 'no sample'} for ${seconds} s; blind until the window is full again`,
           happening.channel,
         );
       }
@@ -289,8 +304,11 @@ export function createRunningWatch(
 
   const checkpointNow = (): Checkpoint => ({
     snapshot: watch.snapshot(),
-    ordinals: Object.fromEntries([...wanted].map((name) => [name, around.channels.samples(name)])),
-    offsets: Object.fromEntries([...wanted].map((name) => [name, around.channels.leastOffset(name)])),
+    ordinals: Object.fromEntries(
+      reads().map((name) => [name, around.channels.samples(name) - gate.waiting(name)]),
+    ),
+    offsets: Object.fromEntries(reads().map((name) => [name, around.channels.leastOffset(name)])),
+    gate: gate.state(),
   });
 
   const acknowledge = (action: Extract<WatchAction, { action: 'acknowledge' }>) => {
@@ -307,17 +325,45 @@ export function createRunningWatch(
     apply({ kind: 'acknowledge', ...(action.upTo === undefined ? {} : { upTo: action.upTo }) });
   };
 
-  return {
-    memo,
-    wants: (channel) => memo.use !== 'taken out of use' && wanted.has(channel),
-    push(frame) {
+  /** the watched channels and those that conditions read */
+  const reads = () => [...new Set([...wanted, ...gate.wants()])];
+
+  const pushAll = (frames: Frame[]) => {
+    for (const frame of frames) {
       memo.gradeSince ??= frame.t0;
       happenings.length = 0;
       const steps = watch.push(frame, happenings);
       noteSteps(steps);
       for (const happening of happenings) tell(happening);
-      dirty = true;
       graded = false;
+    }
+    dirty = true;
+  };
+  const readLeftOut = () => {
+    const { marks, conditions } = around.leftOut(wanted);
+    gate.setMarks(marks);
+    pushAll(gate.setConditions(conditions, (channel) => around.channels.newestSample(channel)));
+  };
+  const leftOutNow = () => {
+    const newest = around.channels.newest(memo.channels[0]!);
+    return newest === null ? null : gate.why(newest, newest);
+  };
+  const silentNow = () => {
+    const channel = gate.waitsFor();
+    return channel !== null && around.silent(channel) ? channel : null;
+  };
+  readLeftOut();
+  dirty = false;
+
+  return {
+    memo,
+    wants: (channel) => memo.use !== 'taken out of use' && reads().includes(channel),
+    push(frame) {
+      pushAll(gate.take(frame));
+    },
+    leftOutChanged() {
+      readLeftOut();
+      around.touch(memo.watch);
     },
     tick() {
       if (shelfIsOver(memo.alarm, around.serverTime())) {
@@ -355,7 +401,9 @@ export function createRunningWatch(
       if (memo.use === 'taken out of use') {
         // What passed while it was out of use was never seen: it begins anew.
         watch = around.createWatch(settings);
-        wanted = new Set(watch.wants());
+        wanted = watch.wants();
+        gate = createLeftOutGate(wanted);
+        readLeftOut();
         tally = createTally();
         memo.gradeSince = null;
       }
@@ -402,6 +450,8 @@ export function createRunningWatch(
         regimeChannel: settings.regimeChannel,
         switchWord: model.switchWord,
         sight: watch.sight(),
+        leftOut: leftOutNow(),
+        waitsFor: silentNow(),
         likeness: watch.likeness(),
         value,
         at,
@@ -413,6 +463,8 @@ export function createRunningWatch(
     },
   };
 }
+
+const leftOutWords = (why: string | null): string | null => (why === null ? null : `left out (${why})`);
 
 /** The channel the regime rule reads, where the model's channels are put on others. */
 function placedChannel(model: Model, channels: string[]): string | null {

@@ -43,6 +43,8 @@ export interface Watches {
   act(watch: string, action: WatchAction): WatchState;
   setUse(watch: string, use: WatchState['use']): WatchState;
   delivered(watch: string, warning: number): void;
+  /** marks or conditions changed */
+  leftOutChanged(): void;
   has(watch: string): boolean;
   state(watch: string): WatchState;
   states(): WatchState[];
@@ -243,6 +245,9 @@ export function createWatches(needs: WatchesNeeds): Watches {
       const watch = get(id);
       watch.setUse(use);
       return watch.state();
+    },
+    leftOutChanged() {
+      for (const watch of running.values()) watch.leftOutChanged();
     },
     delivered: (id, warning) => running.get(id)?.delivered(warning),
     has: (id) => running.has(id),

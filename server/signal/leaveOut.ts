@@ -49,13 +49,54 @@ export interface LevelSide {
 export const liesOutside = ({ side, level }: LevelSide, value: number): boolean =>
   side === 'above' ? value > level : value < level;
 
+/** What is known so far of a condition on another channel; plain data. */
+export interface ConditionState {
+  /** time of the newest sample, −∞ before the first */
+  newest: number;
+  /** the stretches that are over, ascending, disjoint */
+  over: LeftOut[];
+  /** where the stretch begins that is not over; null: the condition does not hold */
+  since: number | null;
+}
+
+/** Before the first value it is not known whether a condition holds, so everything is left out. */
+export const createConditionState = (): ConditionState => ({
+  newest: Number.NEGATIVE_INFINITY,
+  over: [],
+  since: Number.NEGATIVE_INFINITY,
+});
+
 /**
- * The stretches in which a channel lies on one side of a level: from the first such sample to just before the next one
- * that does not. Between samples, and where a value is missing, the last sample holds. Before the first value and
- * behind the last sample it is not known whether the condition holds, so those are left out as well.
+ * Takes samples of the channel that a condition reads. It holds from the first sample on its side of the level to just
+ * before the next one that is not; between samples, and where a value is missing, the last sample holds. Samples not
+ * newer than the newest are passed over.
  *
  * @param times  seconds, ascending; same length as values
  * @param values NaN: no sample there
+ */
+export function noteCondition(
+  state: ConditionState,
+  condition: LevelSide,
+  times: Float64Array,
+  values: Float64Array,
+): void {
+  for (let i = 0; i < times.length; i++) {
+    const time = times[i]!;
+    if (time <= state.newest) continue;
+    state.newest = time;
+    if (Number.isNaN(values[i]!)) continue;
+    if (liesOutside(condition, values[i]!)) state.since ??= time;
+    else if (state.since !== null) {
+      state.over.push({ from: state.since, to: justBefore(time) });
+      state.since = null;
+    }
+  }
+}
+
+/**
+ * The stretches that a recorded channel's condition leaves out: `noteCondition` over all of it, and everything behind
+ * the last sample, where it is not known.
+ *
  * @returns ascending, disjoint; the first may begin at −∞, the last ends at ∞
  */
 export function conditionStretches(
@@ -63,20 +104,10 @@ export function conditionStretches(
   values: Float64Array,
   condition: LevelSide,
 ): LeftOut[] {
-  const stretches: LeftOut[] = [];
-  let from: number | null = Number.NEGATIVE_INFINITY;
-  for (let i = 0; i < times.length; i++) {
-    if (Number.isNaN(values[i]!)) continue;
-    const out = liesOutside(condition, values[i]!);
-    if (out) from ??= times[i]!;
-    else if (from !== null) {
-      stretches.push({ from, to: justBefore(times[i]!) });
-      from = null;
-    }
-  }
-  const last = times.length === 0 ? Number.NEGATIVE_INFINITY : justAfter(times[times.length - 1]!);
-  stretches.push({ from: from ?? last, to: Number.POSITIVE_INFINITY });
-  return stretches;
+  const state = createConditionState();
+  noteCondition(state, condition, times, values);
+  const unknown = state.newest === Number.NEGATIVE_INFINITY ? state.newest : justAfter(state.newest);
+  return [...state.over, { from: state.since ?? unknown, to: Number.POSITIVE_INFINITY }];
 }
 
 const number = new Float64Array(1);

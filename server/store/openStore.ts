@@ -1,5 +1,6 @@
 import { mkdirSync } from 'node:fs';
 import { ChannelDescription } from '../../shared-types/channel.ts';
+import { createLeftOutRecords, createRehearsalRecords, readLeftOut } from './annotations.ts';
 import { createGroupCommit } from './groupCommit.ts';
 import { claimFolder } from './lock.ts';
 import { openDatabase, openDatabaseReader } from './openDatabase.ts';
@@ -47,6 +48,8 @@ function storeOver(
   const tails = createTails(database);
   const runs = createRuns(database);
   const records = createRecords(database);
+  const leftOut = createLeftOutRecords(database);
+  const rehearsals = createRehearsalRecords(database);
   const readings = createReadings(database);
   const describe = database.prepare('UPDATE series SET description = ? WHERE id = ?');
   const countHoles = database.prepare('UPDATE series SET holes = holes + ? WHERE id = ?');
@@ -118,6 +121,16 @@ function storeOver(
     switches: (query) => read(() => records.switches(query)),
     log: (entry) => write(() => records.log(entry)),
     logEntries: (query) => read(() => records.logEntries(query)),
+    saveMark: (mark) => write(() => leftOut.saveMark(mark)),
+    removeMark: (id) => write(() => leftOut.removeMark(id)),
+    marks: () => read(() => leftOut.marks()),
+    saveCondition: (condition) => write(() => leftOut.saveCondition(condition)),
+    removeCondition: (id) => write(() => leftOut.removeCondition(id)),
+    conditions: () => read(() => leftOut.conditions()),
+    saveRehearsal: (rehearsal) => write(() => rehearsals.saveRehearsal(rehearsal)),
+    removeRehearsal: (id) => write(() => rehearsals.removeRehearsal(id)),
+    rehearsals: () => read(() => rehearsals.rehearsals()),
+    rehearsalResult: (id) => read(() => rehearsals.rehearsalResult(id)),
     close: async () => {
       await close();
       if (!database.open) return;
@@ -129,7 +142,9 @@ function storeOver(
 
 type Reading = <T>(question: () => T) => Promise<T>;
 
-function readMethods(readings: Readings, read: Reading): Omit<StoreReader, 'model' | 'models' | 'close'> {
+type SampleReadings = Omit<StoreReader, 'model' | 'models' | 'marks' | 'conditions' | 'close'>;
+
+function readMethods(readings: Readings, read: Reading): SampleReadings {
   return {
     channels: () => read(() => readings.channels()),
     samplesFrom: (channel, ordinal, most) => read(() => readings.samplesFrom(channel, ordinal, most)),
@@ -151,11 +166,14 @@ export function openStoreReader(dataFolder: string): StoreReader {
   const database = openDatabaseReader(dataFolder);
   const readings = createReadings(database);
   const records = createRecords(database);
+  const leftOut = readLeftOut(database);
   const read: Reading = async (question) => database.transaction(question)();
   return {
     ...readMethods(readings, read),
     model: (name) => read(() => records.model(name)),
     models: () => read(() => records.models()),
+    marks: () => read(() => leftOut.marks()),
+    conditions: () => read(() => leftOut.conditions()),
     close: async () => {
       database.close();
     },

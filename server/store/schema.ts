@@ -71,6 +71,11 @@ const MIGRATIONS: readonly string[] = [
   ) STRICT;
   CREATE TABLE log (id INTEGER PRIMARY KEY AUTOINCREMENT, json TEXT NOT NULL) STRICT;
   `,
+  `
+  CREATE TABLE marks (id INTEGER PRIMARY KEY AUTOINCREMENT, json TEXT NOT NULL) STRICT;
+  CREATE TABLE conditions (id INTEGER PRIMARY KEY AUTOINCREMENT, json TEXT NOT NULL) STRICT;
+  CREATE TABLE rehearsals (id TEXT PRIMARY KEY, state TEXT NOT NULL, result BLOB NOT NULL) STRICT;
+  `,
 ];
 
 /** Version of the database this program writes. */

@@ -1,4 +1,5 @@
 import type { ChannelDescription, Columns } from '../../shared-types/channel.ts';
+import type { Mark, StoredCondition } from '../../shared-types/rehearsal.ts';
 import type { LogEntry, SwitchEvent, Warning } from '../../shared-types/warning.ts';
 
 /** A frame on its way to disk. `times` null: sample i is at t0 + i·dt. */
@@ -48,6 +49,13 @@ export interface StoredWatch {
   snapshot: Uint8Array | null;
 }
 
+/** A finished rehearsal. `state` is the gateway's JSON, `result` the CBOR of what was found. */
+export interface StoredRehearsal {
+  id: string;
+  state: string;
+  result: Uint8Array;
+}
+
 /** What one push of a watch leaves behind; written in one transaction with the frames queued before it. */
 export interface WatchProgress {
   watch: string;
@@ -85,6 +93,9 @@ export interface StoreReader {
   recordings(gapSeconds: number): Promise<StoredRecording[]>;
   model(name: string): Promise<string | null>;
   models(): Promise<{ name: string; json: string }[]>;
+  /** stretches and conditions to be left out, in the order they were made; none in a store of version 1 */
+  marks(): Promise<Mark[]>;
+  conditions(): Promise<StoredCondition[]>;
   close(): Promise<void>;
 }
 
@@ -134,9 +145,22 @@ export interface Store extends StoreReader {
   switches(query: {
     channel?: string;
     watch?: string;
+    after?: number;
     since?: number;
     most?: number;
   }): Promise<SwitchEvent[]>;
+
+  /** a new mark (id 0: one is given) or a changed one; returns its id. Removing what is not there changes nothing. */
+  saveMark(mark: Mark): Promise<number>;
+  removeMark(id: number): Promise<void>;
+  saveCondition(condition: StoredCondition): Promise<number>;
+  removeCondition(id: number): Promise<void>;
+
+  saveRehearsal(rehearsal: StoredRehearsal): Promise<void>;
+  removeRehearsal(id: string): Promise<void>;
+  /** in the order they were saved */
+  rehearsals(): Promise<Omit<StoredRehearsal, 'result'>[]>;
+  rehearsalResult(id: string): Promise<Uint8Array | null>;
 
   log(entry: Omit<LogEntry, 'id'>): Promise<number>;
   logEntries(query: { after?: number; most?: number; newest?: boolean }): Promise<LogEntry[]>;

@@ -117,6 +117,16 @@ function remoteStore(call: Call, notices: readonly string[]): Store {
     switches: true,
     log: true,
     logEntries: true,
+    saveMark: true,
+    removeMark: true,
+    marks: true,
+    saveCondition: true,
+    removeCondition: true,
+    conditions: true,
+    saveRehearsal: true,
+    removeRehearsal: true,
+    rehearsals: true,
+    rehearsalResult: true,
     close: true,
   };
   const remote = Object.fromEntries(

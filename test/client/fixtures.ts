@@ -81,6 +81,8 @@ export function watch(changes: Partial<WatchState> = {}): WatchState {
     likeness: { kind: 'like' },
     value: null,
     at: null,
+    leftOut: null,
+    waitsFor: null,
     regimeNow: 0,
     promise: score(),
     grade: null,

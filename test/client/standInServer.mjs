@@ -132,6 +132,8 @@ for (let i = 0; i < count; i++) {
     likeness: { kind: 'like' },
     value: 0,
     at: null,
+    leftOut: null,
+    waitsFor: null,
     regimeNow: 0,
     promise: score(141, 154, 0.97),
     grade: score(268, 331, 0.95),

@@ -1,11 +1,12 @@
 // Made store-version-1.db.gz: Foreshift 0.1.0 on Node 20.20, schema version 1, makeStoreFixture(an empty folder, the file), 2026-12-01.
+// Made store-version-2.db.gz: the same with schema version 2, 2026-12-01.
 import { readFileSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
 import { gzipSync } from 'node:zlib';
 import Database from 'better-sqlite3';
 import { openStore } from '../../server/store/openStore.ts';
 
-/** Writes the fixture of the current schema version: 25 frames of 100 samples, a watch, a warning. */
+/** Writes the fixture of the current schema version: 25 frames of 100 samples, a watch, a warning, what is left out, a rehearsal. */
 export async function makeStoreFixture(folder: string, out: string): Promise<void> {
   const store = openStore(folder, { commitEvery: 0.01 });
   await store.saveChannel({ channel: 'A', unit: 'K', label: '', interval: 0.5, low: null, high: null });
@@ -28,6 +29,9 @@ export async function makeStoreFixture(folder: string, out: string): Promise<voi
     deliveredAt: null, variable: 'forcing', value: 2.5, threshold: 2, outcome: 'open', switchAt: null, lead: null,
     acknowledgedAt: null, acknowledgedBy: null, quiet: false,
   });
+  await store.saveMark({ id: 0, channel: 'A', from: 1e9 + 5, to: null, why: 'calibration', text: 'new zero', by: 'me' });
+  await store.saveCondition({ id: 0, channel: 'A', when: 'B', side: 'above', level: 2.5 });
+  await store.saveRehearsal({ id: '1', state: '{"state":"done"}', result: Uint8Array.of(4, 5, 6) });
   await store.close();
   const database = new Database(join(folder, 'foreshift.db'));
   database.pragma('journal_mode = DELETE');

@@ -215,13 +215,19 @@ test('models, watches with their snapshots, and the log come back as they were',
   await store.close();
 });
 
-test('a database of version 1 opens, and its samples are what they were', async () => {
+/** An open store over a copy of the fixture of a schema version. */
+function fixture(version: number) {
   const folder = temporaryFolder();
   writeFileSync(
     join(folder, 'foreshift.db'),
-    gunzipSync(readFileSync(new URL('../../data/store-version-1.db.gz', import.meta.url))),
+    gunzipSync(readFileSync(new URL(`../../data/store-version-${version}.db.gz`, import.meta.url))),
   );
-  const store = openStore(folder, options);
+  return { folder, open: () => openStore(folder, options) };
+}
+
+test.each([1, 2])('a database of version %i opens, and its samples are what they were', async (version) => {
+  const { folder, open } = fixture(version);
+  const store = open();
   expect(store.notices).toEqual([]);
   const block = await store.samplesFrom('A', 0, 1e5);
   expect(block.values).toEqual(
@@ -236,4 +242,23 @@ test('a database of version 1 opens, and its samples are what they were', async 
   expect((await store.warnings({})).map((warning) => warning.at)).toEqual([1e9 + 0.1]);
   expect(existsSync(join(folder, 'foreshift.db'))).toBe(true);
   await store.close();
+});
+
+test('a database of version 2 keeps what is left out and its rehearsals', async () => {
+  const store = fixture(2).open();
+  expect(await store.marks()).toEqual([
+    { id: 1, channel: 'A', from: 1e9 + 5, to: null, why: 'calibration', text: 'new zero', by: 'me' },
+  ]);
+  expect(await store.conditions()).toEqual([{ id: 1, channel: 'A', when: 'B', side: 'above', level: 2.5 }]);
+  expect(await store.rehearsals()).toEqual([{ id: '1', state: '{"state":"done"}' }]);
+  expect(await store.rehearsalResult('1')).toEqual(Uint8Array.of(4, 5, 6));
+  await store.close();
+});
+
+test('a database of version 1 can be read before a server has brought it forward, with nothing left out', async () => {
+  const { folder } = fixture(1);
+  const reader = openStoreReader(folder);
+  expect([await reader.marks(), await reader.conditions()]).toEqual([[], []]);
+  expect((await reader.channels()).map(({ channel }) => channel)).toEqual(['A']);
+  await reader.close();
 });
