@@ -2,12 +2,19 @@ import 'uplot/dist/uPlot.min.css';
 import { ReplaySubject } from 'rxjs';
 import type { FeedRequest } from '../shared-types/feed.ts';
 import { feed } from './feed.ts';
+import { PAGES } from './pages.ts';
+import { createNavigation, route } from './route.ts';
 import { mountWatch } from './watch/page.ts';
 
 const look$ = new ReplaySubject<FeedRequest>(1);
-const page = mountWatch(document.getElementById('page')!, (look) => look$.next({ look }));
+const navigation = createNavigation(PAGES);
+const page = mountWatch(document.getElementById('page')!, navigation.root, (look) => look$.next({ look }));
 const address = `${location.protocol === 'https:' ? 'wss' : 'ws'}://${location.host}/feed`;
 
+route(PAGES, page.body, (shown) => {
+  navigation.here(shown);
+  page.called(shown.name);
+});
 feed(address, look$).subscribe((happening) => {
   if (happening.kind === 'message') page.receive(happening.message);
   else if (happening.kind === 'open') page.opened();

@@ -10,8 +10,8 @@ export interface Attention {
   canNotify(): boolean;
   toggleTone(): Promise<void>;
   toggleNotices(): Promise<void>;
-  /** title and icon for the warnings that wait for a person */
-  show(waiting: readonly string[]): void;
+  /** title and icon for the warnings that wait for a person; `page`: the name of the page that is shown */
+  show(page: string, waiting: readonly string[]): void;
   /** one new warning, once; quiet ones never get here */
   call(warning: Warning, state: PageState, now: number): void;
 }
@@ -36,8 +36,8 @@ export function createAttention(): Attention {
       notices = !notices && mayNotify();
       remember('notices', notices ? 'on' : 'off');
     },
-    show: (waiting) => {
-      const title = waiting.length === 0 ? 'Watch · Foreshift' : `▲ ${waiting.join(', ')} · Foreshift`;
+    show: (page, waiting) => {
+      const title = waiting.length === 0 ? `${page} · Foreshift` : `▲ ${waiting.join(', ')} · Foreshift`;
       if (title === shown) return;
       shown = title;
       document.title = title;

@@ -9,8 +9,9 @@ import { createHeader } from './header.ts';
 import type { Strips } from './strips.ts';
 import { createToday } from './today.ts';
 
-/** The page around the strips. */
+/** The page around the strips; head, notices and caution stay when another page is shown in place of `body`. */
 export interface Frame {
+  body: HTMLElement;
   update(view: PageView, connected: boolean, unheard: number): void;
   /** says what could not be done */
   complain(error: unknown): void;
@@ -21,9 +22,10 @@ export function createFrame(
   host: HTMLElement,
   strips: Strips,
   attention: Attention,
+  navigation: HTMLElement,
   showKeys: () => void,
 ): Frame {
-  const header = createHeader(attention, showKeys);
+  const header = createHeader(attention, navigation, showKeys);
   const first = createFirstVisit();
   const today = createToday();
   const lost = element('p', 'notice lost');
@@ -41,12 +43,19 @@ export function createFrame(
   );
   const announced = element('p', 'unseen');
   mark(announced, 'aria-live', 'polite');
+  const askingWords = element('strong', '');
+  const toWatch = element('a', '', 'To the Watch page');
+  toWatch.href = '#/';
+  const asking = element('p', 'notice asking', askingWords, toWatch);
+  asking.hidden = true;
   for (const each of [lost, trouble, complaint]) say(each, null);
   zoomed.hidden = true;
-  const notices = element('div', 'notices', lost, trouble, complaint, zoomed);
+  const notices = element('div', 'notices', lost, trouble, asking, complaint, zoomed);
   const key = legend();
-  host.replaceChildren(header.root, notices, first.root, strips.root, key, today.root, caution(), announced);
+  const body = element('div', 'pageBody', first.root, strips.root, key, today.root);
+  host.replaceChildren(header.root, notices, body, caution(), announced);
   return {
+    body,
     update: (view, connected, unheard) => {
       header.update(view.state, view.today, view.lost);
       first.update(view.state);
@@ -61,7 +70,11 @@ export function createFrame(
       );
       mark(host, 'data-lost', view.lost ? 'yes' : null);
       const views = strips.views();
-      zoomed.hidden = view.zoom === null;
+      // another page must not hide that a person is asked for
+      const asked = body.hidden ? asks(views) : '';
+      asking.hidden = asked === '';
+      if (asked !== '') say(askingWords, asked);
+      zoomed.hidden = view.zoom === null || body.hidden;
       const seen = views[0];
       if (view.zoom !== null && seen !== undefined)
         say(
@@ -85,6 +98,18 @@ function lostText(view: PageView, connected: boolean, unheard: number): string |
       : 'Foreshift’s server does not answer. Start it with npx foreshift watch; this page goes on trying.';
   if (!view.lost) return null;
   return `Foreshift’s server has not answered for ${spanText(Math.max(1, Math.floor(unheard)))}. What you see is old; trying again.`;
+}
+
+/** The open warnings that wait for a person, each as it stands now: "Loop A: reversal expected in 4 – 14 s". */
+function asks(views: StripView[]): string {
+  return views
+    .flatMap((view) => {
+      const warning = spokenFor(view);
+      if (stance(view) !== 'asks' || warning === null || view.now === null) return [];
+      const { what, when } = headline(warning, view.watch!, view.now);
+      return [`▲ ${view.channel.channel}: ${what} ${when}`];
+    })
+    .join('; ');
 }
 
 /** What a screen reader is told: changes only with the warnings, never with the countdown. */

@@ -9,13 +9,10 @@ export interface Header {
   update(state: PageState, today: number, lost: boolean): void;
 }
 
-/** Creates the head. */
-export function createHeader(attention: Attention, showKeys: () => void): Header {
+/** Creates the head; `navigation` holds the links to the pages. */
+export function createHeader(attention: Attention, navigation: HTMLElement, showKeys: () => void): Header {
   const hour = element('time', 'hour');
   const facts = element('p', 'facts');
-  const here = element('a', 'here', 'Watch');
-  here.href = '/';
-  mark(here, 'aria-current', 'page');
   const tone = button('', 'quiet', () => attention.toggleTone().then(update));
   const notices = button('', 'quiet', () => attention.toggleNotices().then(update));
   const update = () => {
@@ -26,8 +23,6 @@ export function createHeader(attention: Attention, showKeys: () => void): Header
   update();
   const keys = button('Keys ?', 'quiet', showKeys);
   mark(keys, 'aria-keyshortcuts', '?');
-  const navigation = element('nav', 'pages', here);
-  mark(navigation, 'aria-label', 'Pages');
   return {
     root: element(
       'header',

@@ -9,9 +9,13 @@ export interface KeyActions {
   help(): void;
 }
 
-/** Listens for the page's keys; leaves alone what is typed into a field, held with a modifier or meant for a dialog. */
-export function listenForKeys(actions: KeyActions): void {
+/**
+ * Listens for the page's keys while it is shown; leaves alone what is typed into a field, held with a modifier or meant
+ * for a dialog.
+ */
+export function listenForKeys(shown: () => boolean, actions: KeyActions): void {
   document.addEventListener('keydown', (event) => {
+    if (!shown()) return;
     const target = event.target instanceof Element ? event.target : null;
     if (event.ctrlKey || event.metaKey || event.altKey || target?.closest('input, select, textarea, dialog'))
       return;

@@ -22,6 +22,10 @@ const LOST_AFTER = 2.5;
 
 /** The Watch page: what the feed tells it goes in, what it draws of the past comes out through `ask`. */
 export interface WatchPage {
+  /** what another page takes the place of */
+  body: HTMLElement;
+  /** the name of the page that is shown, for the window's title */
+  called(name: string): void;
   receive(message: FeedMessage): void;
   opened(): void;
   closed(): void;
@@ -30,10 +34,12 @@ export interface WatchPage {
 /**
  * Mounts the page and draws it from then on.
  *
+ * @param navigation the links to the pages
  * @param ask called with what the page wants drawn, at once and at each change
  */
 export function mountWatch(
   host: HTMLElement,
+  navigation: HTMLElement,
   ask: (look: { seconds: number; columns: number }) => void,
 ): WatchPage {
   const server = createClock();
@@ -51,6 +57,7 @@ export function mountWatch(
   };
   let chosenLook = recall('look', '') !== '';
   let connected = false;
+  let name = 'Watch';
   let heard = monotonic();
   const called = new Set<number>();
 
@@ -61,7 +68,7 @@ export function mountWatch(
       act(watch, { action: from === 'shelved' ? 'unshelve' : 'return to service', by: whoIsHere() }),
     explainWatching,
   });
-  const frame = createFrame(host, strips, attention, showKeys);
+  const frame = createFrame(host, strips, attention, navigation, showKeys);
 
   const look = (seconds: number, columns: number) => {
     if (seconds === view.look.seconds && columns === view.look.columns) return;
@@ -72,7 +79,8 @@ export function mountWatch(
 
   const waiting = (): StripView[] => strips.views().filter((each) => stance(each) === 'asks');
   const inHand = (): StripView | null => strips.chosen() ?? waiting()[0] ?? null;
-  listenForKeys({
+  const shown = () => !frame.body.hidden;
+  listenForKeys(shown, {
     acknowledge: () => {
       const target = [strips.chosen(), ...waiting()].find(
         (each) => each?.watch && each.warnings.length > 0 && /unacknowledged/.test(each.watch.state),
@@ -126,13 +134,16 @@ export function mountWatch(
     view.today = timeAt(server, view.monotonic) ?? 0;
     view.lost = view.state.welcomed && (!connected || monotonic() - heard > LOST_AFTER);
     frame.update(view, connected, monotonic() - heard);
-    attention.show(waiting().map((each) => titleOf(each)));
+    attention.show(
+      name,
+      waiting().map((each) => titleOf(each)),
+    );
   };
   setInterval(tick, 250);
   const animate = () => {
     requestAnimationFrame(animate);
     view.monotonic = moment();
-    strips.animate();
+    if (shown()) strips.animate();
   };
   requestAnimationFrame(animate);
   for (const query of ['(prefers-color-scheme: dark)', 'print']) {
@@ -144,6 +155,11 @@ export function mountWatch(
   ask(view.look);
 
   return {
+    body: frame.body,
+    called: (next) => {
+      name = next;
+      tick();
+    },
     opened: () => {
       connected = true;
     },
