@@ -1,15 +1,12 @@
 import { existsSync } from 'node:fs';
 import type { IncomingMessage } from 'node:http';
 import { fileURLToPath } from 'node:url';
-import { Encoder } from 'cbor-x';
-import express, { type NextFunction, type Request, type Response } from 'express';
+import express, { type Request, type Response } from 'express';
 import { z } from 'zod';
-import type { Columns } from '../../shared-types/channel.ts';
 import { NewWatch, WatchAction } from '../../shared-types/watch.ts';
-import { InputError } from '../signal/inputError.ts';
-import { looksLikeTime, parseTime } from '../signal/time.ts';
+import { answerError, columnsAsked, numberIn, problem, read, sendEither, text } from './httpAnswers.ts';
+import { routeMarks } from './httpMarks.ts';
 import type { Hub } from './hub.ts';
-import { complaint } from './ingestFrame.ts';
 import { samplesAsCsv } from './samplesCsv.ts';
 import { Refused } from './watches.ts';
 
@@ -28,7 +25,6 @@ const CONTENT_SECURITY_POLICY = [
 
 const MOST_ENTRIES = 10_000;
 const LOOPBACK = new Set(['localhost', '127.0.0.1', '[::1]']);
-const encoder = new Encoder({ useRecords: false });
 
 /** Where the built pages are, from the source as well as from what was built of it. */
 function pagesFolder(): string {
@@ -51,56 +47,6 @@ export function whyNotAllowed(headers: IncomingMessage['headers']): string | nul
   return null;
 }
 
-function problem(response: Response, status: number, title: string, detail: string, code: string): void {
-  response.status(status).type('application/problem+json');
-  response.send(JSON.stringify({ type: 'about:blank', title, status, detail, code }));
-}
-
-function read<T>(schema: z.ZodType<T>, source: unknown): T {
-  const parsed = schema.safeParse(source ?? {});
-  if (!parsed.success)
-    throw new Refused(400, 'BAD_REQUEST', `the request cannot be used: ${complaint(parsed.error)}`);
-  return parsed.data;
-}
-
-const text = (value: unknown): string | undefined => (typeof value === 'string' ? value : undefined);
-
-function numberIn(query: Request['query'], name: string, fallback: number): number {
-  const given = text(query[name]);
-  if (given === undefined || given === '') return fallback;
-  const number = looksLikeTime(given) ? parseTime(given) : Number(given);
-  if (Number.isFinite(number)) return number;
-  throw new Refused(
-    400,
-    'BAD_QUERY',
-    `${name} is "${given.slice(0, 60)}"; give a number or an RFC 3339 time`,
-  );
-}
-
-const gapsAsNull = (values: Float64Array) =>
-  Array.from(values, (value) => (Number.isNaN(value) ? null : value));
-
-function sendColumns(request: Request, response: Response, columns: Columns): void {
-  if (request.accepts(['application/json', 'application/cbor']) === 'application/cbor')
-    response.type('application/cbor').send(Buffer.from(encoder.encode(columns)));
-  else
-    response.json({
-      t: Array.from(columns.t),
-      low: gapsAsNull(columns.low),
-      high: gapsAsNull(columns.high),
-    });
-}
-
-function columnsAsked(query: Request['query'], newest: number | null) {
-  const to = numberIn(query, 'to', newest ?? 0);
-  const from = numberIn(query, 'from', to - 60);
-  const columns = Math.round(numberIn(query, 'columns', 1000));
-  if (from >= to) throw new Refused(400, 'BAD_QUERY', `from (${from}) is not before to (${to}); swap them`);
-  if (columns < 1 || columns > 20_000)
-    throw new Refused(400, 'BAD_QUERY', `columns is ${columns}; ask for 1 to 20000`);
-  return { from, to, columns };
-}
-
 function routeChannels(app: express.Express, hub: Hub): void {
   const channelOf = (request: Request): string => {
     const channel = String(request.params.channel);
@@ -119,7 +65,7 @@ function routeChannels(app: express.Express, hub: Hub): void {
     const channel = channelOf(request);
     const { from, to, columns } = columnsAsked(request.query, hub.channels.newest(channel));
     hub.recorder.flush();
-    sendColumns(request, response, await hub.store.signalColumns(channel, from, to, columns));
+    sendEither(request, response, await hub.store.signalColumns(channel, from, to, columns));
   });
   app.get('/api/channels/:channel/samples.csv', async (request, response) => {
     const channel = channelOf(request);
@@ -156,7 +102,7 @@ function routeWatches(app: express.Express, hub: Hub): void {
     const { watch, at } = watches.state(watchOf(request));
     const { from, to, columns } = columnsAsked(request.query, at);
     await watches.saveProgress();
-    sendColumns(request, response, await hub.store.traceColumns(watch, from, to, columns));
+    sendEither(request, response, await hub.store.traceColumns(watch, from, to, columns));
   });
 }
 
@@ -214,36 +160,6 @@ function routeRecords(app: express.Express, hub: Hub): void {
 
 const FIRST_PAGE_MISSING = 'The pages are not built; run npm run build, then reload.';
 
-function answerError(error: unknown, _request: Request, response: Response, _next: NextFunction): void {
-  if (response.headersSent) {
-    response.destroy();
-    return;
-  }
-  const { status, type, message } = error as { status?: number; type?: string; message: string };
-  if (error instanceof Refused)
-    problem(
-      response,
-      error.status,
-      error.status === 404 ? 'Not found' : 'Cannot be done',
-      message,
-      error.code,
-    );
-  else if (error instanceof InputError) problem(response, 400, 'Cannot be used', message, error.code);
-  else if (type === 'entity.parse.failed')
-    problem(
-      response,
-      400,
-      'Not JSON',
-      `the body is not JSON: ${message}; send one JSON document`,
-      'NOT_JSON',
-    );
-  else if (type === 'entity.too.large')
-    problem(response, 413, 'Too large', 'the body is too large; send a smaller one', 'TOO_LARGE');
-  else if (status !== undefined && status >= 400 && status < 500)
-    problem(response, status, 'Cannot be used', message, 'BAD_REQUEST');
-  else problem(response, 500, 'Failed', message, 'FAILED');
-}
-
 /** HTTP: health, what is known, what a person may do, and the pages. Errors are RFC 9457 problem details. */
 export function createHttpApp(hub: Hub): express.Express {
   const app = express();
@@ -268,6 +184,7 @@ export function createHttpApp(hub: Hub): express.Express {
   routeChannels(app, hub);
   routeWatches(app, hub);
   routeRecords(app, hub);
+  routeMarks(app, hub.leftOut);
   const pages = pagesFolder();
   if (existsSync(pages)) app.use(express.static(pages));
   else

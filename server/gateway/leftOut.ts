@@ -17,6 +17,8 @@ export interface LeftOutRegistry {
   removeMark(id: number): Promise<void>;
   addCondition(condition: Condition): Promise<StoredCondition>;
   removeCondition(id: number): Promise<void>;
+  /** the condition that says the same */
+  removeSameCondition(condition: Condition): Promise<void>;
 }
 
 export interface LeftOutNeeds {
@@ -59,6 +61,19 @@ export async function createLeftOut({
   const checkOrder = (from: number, to: number | null) => {
     if (to === null || to >= from) return;
     throw new Refused(400, 'BAD_RANGE', `the mark ends (${to}) before it begins (${from}); swap them`);
+  };
+
+  const sameAs = (wanted: Condition) =>
+    [...conditions.values()].find(
+      ({ channel, when, side, level }) =>
+        channel === wanted.channel && when === wanted.when && side === wanted.side && level === wanted.level,
+    );
+  const removeCondition = async (id: number) => {
+    const condition = get(conditions, id, 'condition');
+    await store.removeCondition(id);
+    conditions.delete(id);
+    log(condition.channel, `no longer left out while ${conditionWords(condition)}`);
+    changed();
   };
 
   return {
@@ -108,14 +123,8 @@ export async function createLeftOut({
     async addCondition(wanted) {
       know(wanted.channel);
       know(wanted.when);
-      const same = [...conditions.values()].find(
-        (one) =>
-          one.channel === wanted.channel &&
-          one.when === wanted.when &&
-          one.side === wanted.side &&
-          one.level === wanted.level,
-      );
-      if (same !== undefined) return same;
+      const known = sameAs(wanted);
+      if (known !== undefined) return known;
       const id = await store.saveCondition({ ...wanted, id: 0 });
       const condition = { ...wanted, id };
       conditions.set(id, condition);
@@ -123,12 +132,15 @@ export async function createLeftOut({
       changed();
       return condition;
     },
-    async removeCondition(id) {
-      const condition = get(conditions, id, 'condition');
-      await store.removeCondition(id);
-      conditions.delete(id);
-      log(condition.channel, `no longer left out while ${conditionWords(condition)}`);
-      changed();
+    removeCondition,
+    async removeSameCondition(wanted) {
+      const known = sameAs(wanted);
+      if (known !== undefined) return removeCondition(known.id);
+      throw new Refused(
+        404,
+        'NOT_THERE',
+        `nothing is left out while ${conditionWords(wanted)}; GET /api/conditions lists what is`,
+      );
     },
   };
 }
