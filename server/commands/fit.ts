@@ -1,6 +1,7 @@
 import { writeFile } from 'node:fs/promises';
 import { parseArgs } from 'node:util';
 import type { Model } from '../../shared-types/model.ts';
+import type { RegimeRule } from '../../shared-types/watch.ts';
 import { fitModel } from '../model/fit.ts';
 import { modelToJson } from '../model/modelFile.ts';
 import { summarise } from '../model/summary.ts';
@@ -12,10 +13,12 @@ import { chooseThreshold, judgePair } from '../rehearsal/search.ts';
 import { createRandom } from '../rigs/random.ts';
 import { usualInterval } from '../signal/grid.ts';
 import { InputError } from '../signal/inputError.ts';
+import { leaveOut } from '../signal/leaveOut.ts';
 import {
   numberOption,
   printJson,
   type RuleChoice,
+  readRegime,
   readRuleOptions,
   ruleOptions,
   ruleOptionsHelp,
@@ -127,8 +130,9 @@ async function readTraining(names: string[], values: Values): Promise<Training> 
   const recordings: Recording[] = [];
   for (const name of names) {
     const source = { data: textOption(values, 'data'), interval: interval ?? undefined };
+    const recording = await readRecording(name, { ...source, channels: wantedChannels(wanted, values) });
     recordings.push(
-      cutRange(await readRecording(name, source), textOption(values, 'from'), textOption(values, 'to')),
+      withoutLeftOut(cutRange(recording, textOption(values, 'from'), textOption(values, 'to'))),
     );
   }
   const series = recordings.map((recording) => wanted.map((name) => pickChannel(recording, name)));
@@ -140,6 +144,24 @@ async function readTraining(names: string[], values: Values): Promise<Training> 
     interval: interval ?? usualInterval(series[0]![0]!.times),
     gapIntervals: numberOption(values, 'gap', 1) ?? 3,
     center,
+  };
+}
+
+/** The channels to fit and the one that the rule for a switch reads. */
+function wantedChannels(wanted: string[], values: Values): string[] {
+  const regime = textOption(values, 'regime');
+  const marks = regime === undefined ? null : marksChannel(readRegime(regime));
+  return [...wanted, textOption(values, 'regime-channel') ?? marks].filter((name) => name != null);
+}
+
+const marksChannel = (regime: RegimeRule): string | null => (regime.kind === 'marks' ? regime.channel : null);
+
+/** A recording with no values where marks and conditions leave them out. */
+function withoutLeftOut(recording: Recording): Recording {
+  const { channels, leftOut = [] } = recording;
+  return {
+    ...recording,
+    channels: channels.map((one) => ({ ...one, values: leaveOut(one.times, one.values, leftOut) })),
   };
 }
 

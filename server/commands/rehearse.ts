@@ -5,6 +5,8 @@ import type { RehearsalResult } from '../../shared-types/rehearsal.ts';
 import { modelFromJson } from '../model/modelFile.ts';
 import { readRecording } from '../recordings/readRecording.ts';
 import type { Recording } from '../recordings/recording.ts';
+import { leftOutSeries } from '../rehearsal/leftOut.ts';
+import { channelsRead } from '../rehearsal/prepare.ts';
 import { runRehearsal } from '../rehearsal/rehearsal.ts';
 import { rehearse as rehearseWatch } from '../rehearsal/rehearse.ts';
 import { InputError } from '../signal/inputError.ts';
@@ -65,9 +67,9 @@ export function rehearse(argv: string[]): Promise<number> {
       return 0;
     }
     const given = values.model === undefined ? null : await readModel(values.model);
-    const recordings = await readRecordings(positionals, values.data);
     const { request, model } =
       given === null ? searchRequest(positionals, values) : givenRequest(given, positionals, values);
+    const recordings = await readRecordings(positionals, values.data, channelsRead(request));
     const started = performance.now();
     const result = runRehearsal(
       {
@@ -75,12 +77,7 @@ export function rehearse(argv: string[]): Promise<number> {
         model,
         program: programName(),
         at: new Date().toISOString(),
-        recordings: recordings.map(({ name, sha256, channels }) => ({
-          name,
-          sha256,
-          series: channels,
-          leftOut: [],
-        })),
+        recordings: recordings.map(taskRecording),
       },
       progressLine(),
     );
@@ -90,6 +87,13 @@ export function rehearse(argv: string[]): Promise<number> {
     return 0;
   });
 }
+
+const taskRecording = ({ name, sha256, channels, leftOut = [] }: Recording) => ({
+  name,
+  sha256,
+  series: channels,
+  leftOut,
+});
 
 /** Lists what the live watch says with the chosen settings: its score is that of the result. */
 function report(result: RehearsalResult, recordings: readonly Recording[], json: boolean): void {
@@ -103,7 +107,7 @@ function report(result: RehearsalResult, recordings: readonly Recording[], json:
       regime: model.regime,
       regimeChannel: model.regimeChannel,
     },
-    recordings.map(({ channels }) => channels),
+    recordings.map((one) => leftOutSeries(taskRecording(one))),
     {
       tunePart: request.tunePart,
       delay: request.delay,
@@ -148,7 +152,11 @@ async function readModel(file: string): Promise<Model> {
   return modelFromJson(text);
 }
 
-async function readRecordings(names: string[], data: string | undefined): Promise<Recording[]> {
+async function readRecordings(
+  names: string[],
+  data: string | undefined,
+  channels: string[],
+): Promise<Recording[]> {
   if (names.length === 0) {
     throw new InputError(
       'NO_RECORDING',
@@ -156,6 +164,6 @@ async function readRecordings(names: string[], data: string | undefined): Promis
     );
   }
   const recordings: Recording[] = [];
-  for (const name of names) recordings.push(await readRecording(name, { data }));
+  for (const name of names) recordings.push(await readRecording(name, { data, channels }));
   return recordings;
 }

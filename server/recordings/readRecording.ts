@@ -1,12 +1,11 @@
-import { createHash } from 'node:crypto';
 import { readFile, stat } from 'node:fs/promises';
 import { join } from 'node:path';
 import { Settings } from '../../shared-types/settings.ts';
 import { InputError } from '../signal/inputError.ts';
 import { openStoreReader } from '../store/openStore.ts';
-import type { StoredChannel, StoredRecording, StoreReader } from '../store/store.ts';
 import { readCsv } from './csv.ts';
-import type { RecordedChannel, Recording } from './recording.ts';
+import { hashOf, readStored } from './readStored.ts';
+import type { Recording } from './recording.ts';
 
 /** Where recordings are read from. */
 export interface RecordingSource {
@@ -14,6 +13,8 @@ export interface RecordingSource {
   data?: string | undefined;
   /** seconds between rows of a file without a time column */
   interval?: number | undefined;
+  /** other channels wanted beside a stored one, over the same time; those that are not stored are not in the recording */
+  channels?: readonly string[] | undefined;
 }
 
 const LARGEST_FILE = 2 ** 31 - 1;
@@ -31,7 +32,8 @@ export async function readRecording(nameOrPath: string, source: RecordingSource 
   const gap = await recordingGap(folder);
   const store = openStoreReader(folder);
   try {
-    return await readStored(store, nameOrPath, gap, folder);
+    const samples = await readStored(nameOrPath, { store, gap, where: folder }, source.channels ?? []);
+    return { ...samples, sha256: hashOf(samples.channels) };
   } finally {
     await store.close();
   }
@@ -64,51 +66,4 @@ async function recordingGap(folder: string): Promise<number> {
       `${join(folder, 'settings.json')} cannot be read as settings; expected JSON such as {"recordingGap": 60}; correct it`,
     );
   }
-}
-
-async function readStored(store: StoreReader, name: string, gap: number, folder: string): Promise<Recording> {
-  const [channel, part] = name.slice('stored:'.length).split('/');
-  const channels = await store.channels();
-  const description = channels.find((known) => known.channel === channel && known.samples > 0);
-  if (description === undefined) throw noRecording(name, channels, folder);
-  if (part === undefined)
-    return stored(name, description, await store.samplesBetween(channel!, -Infinity, Infinity));
-  const all = (await store.recordings(gap)).filter((recording) => recording.channel === channel);
-  const chosen = all.find((recording) => recording.name === `${channel}/${part}`);
-  if (chosen === undefined)
-    throw new InputError(
-      'NO_RECORDING',
-      `${name} is not stored; ${channel} has ${all.length} recordings, ${listed(all)}; name one of these`,
-    );
-  return stored(name, description, await store.samplesFrom(channel!, chosen.ordinal, chosen.samples));
-}
-
-function listed(recordings: StoredRecording[]): string {
-  const shown = recordings.slice(-5).map(({ name, from, to }) => `stored:${name} (${from} to ${to} s)`);
-  return (recordings.length > shown.length ? 'the newest: ' : '') + shown.join(', ');
-}
-
-function noRecording(name: string, channels: StoredChannel[], folder: string): InputError {
-  const names = channels.filter(({ samples }) => samples > 0).map(({ channel }) => `stored:${channel}`);
-  return new InputError(
-    'NO_RECORDING',
-    `${name} is not in ${folder}; ` +
-      (names.length > 0
-        ? `it has ${names.join(', ')}; name one of these`
-        : 'nothing is stored there yet; connect a producer to a server first, or name a file'),
-  );
-}
-
-function stored(
-  name: string,
-  { channel, unit }: StoredChannel,
-  samples: Pick<RecordedChannel, 'times' | 'values'>,
-): Recording {
-  const { times, values } = samples;
-  const hash = createHash('sha256').update(bytesOf(times)).update(bytesOf(values));
-  return { name, channels: [{ channel, unit, times, values }], sha256: hash.digest('hex') };
-}
-
-function bytesOf({ buffer, byteOffset, byteLength }: Float64Array): Uint8Array {
-  return new Uint8Array(buffer, byteOffset, byteLength);
 }

@@ -14,4 +14,13 @@ export interface Recording {
   channels: RecordedChannel[];
   /** SHA-256 of the file's bytes, or of the samples (times then values, little-endian float64) when stored */
   sha256: string;
+  /** of a stored one: what marks and conditions leave out; the values are still there */
+  leftOut?: LeftOutStretch[];
+}
+
+/** A stretch that must not count, ends included (seconds, channel time), and why in words. */
+export interface LeftOutStretch {
+  from: number;
+  to: number;
+  why: string;
 }

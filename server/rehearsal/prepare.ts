@@ -80,6 +80,15 @@ export function prepareTask(task: RehearsalTask): Prepared {
   };
 }
 
+/**
+ * The channels that a rehearsal reads: the watched ones, and the one its rule for a switch reads.
+ *
+ * @throws InputError BAD_REGIME
+ */
+export function channelsRead({ channels, regime, regimeChannel }: RehearsalRequest): string[] {
+  return [...new Set([...channels, regimeChannelOf(readRegime(regime), regimeChannel, channels)])];
+}
+
 function readRegime(text: string): RegimeRule {
   try {
     return parseRegimeRule(text);

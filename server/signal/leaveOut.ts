@@ -97,16 +97,19 @@ export function noteCondition(
  * The stretches that a recorded channel's condition leaves out: `noteCondition` over all of it, and everything behind
  * the last sample, where it is not known.
  *
+ * @param newest time of the channel's newest sample, where these are not all of them
  * @returns ascending, disjoint; the first may begin at −∞, the last ends at ∞
  */
 export function conditionStretches(
   times: Float64Array,
   values: Float64Array,
   condition: LevelSide,
+  newest = Number.NEGATIVE_INFINITY,
 ): LeftOut[] {
   const state = createConditionState();
   noteCondition(state, condition, times, values);
-  const unknown = state.newest === Number.NEGATIVE_INFINITY ? state.newest : justAfter(state.newest);
+  const known = Math.max(newest, state.newest);
+  const unknown = known === Number.NEGATIVE_INFINITY ? known : justAfter(known);
   return [...state.over, { from: state.since ?? unknown, to: Number.POSITIVE_INFINITY }];
 }
 

@@ -6,6 +6,7 @@ import { fit } from '../../../server/commands/fit.ts';
 import { modelFromJson } from '../../../server/model/modelFile.ts';
 import { lorenzStates } from '../../../server/rigs/lorenz.ts';
 import { createRandom } from '../../../server/rigs/random.ts';
+import { openStore } from '../../../server/store/openStore.ts';
 
 let folder = '';
 let recording = '';
@@ -154,5 +155,32 @@ describe('foreshift fit', () => {
     expect(summary.coordinates.length).toBe(8);
     expect(summary.seconds).toBeGreaterThan(0);
     expect((await run('--help')).output).toContain('example:');
+  });
+
+  it('leaves out what is marked in a stored recording', async () => {
+    const data = join(folder, 'data');
+    const store = openStore(data, { commitEvery: 0.01 });
+    const values = Float64Array.from({ length: 3000 }, (_, i) => Math.sin(0.05 * i) + Math.sin(0.021 * i));
+    const t0 = 1.7e9;
+    await store.appendFrames([
+      { channel: 'A', run: 'r', seq: 0, digest: 1, t0, dt: 0.5, times: null, values },
+    ]);
+    const fitted = async () => {
+      const how = ['--channel', 'A', '--delays', '20', '--rank', '4', '--data', data, '--out', out];
+      expect(await run('stored:A', ...how)).toMatchObject({ code: 0, errors: '' });
+      return modelFromJson(await readFile(out, 'utf8')).diagnostics;
+    };
+    expect(await fitted()).toMatchObject({ samples: 3000, windows: 2981 });
+    await store.saveMark({
+      id: 0,
+      channel: 'A',
+      from: t0 + 500,
+      to: t0 + 549.5,
+      why: 'calibration',
+      text: '',
+      by: '',
+    });
+    expect(await fitted()).toMatchObject({ samples: 2900, windows: 2900 - 2 * 19 });
+    await store.close();
   });
 });
