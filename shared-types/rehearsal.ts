@@ -1,7 +1,7 @@
 import { z } from 'zod';
 import { ChannelName } from './channel.ts';
 import type { Score } from './score.ts';
-import type { SwitchOutcome, WarningOutcome } from './warning.ts';
+import type { SwitchOutcome } from './warning.ts';
 import type { WatchRule } from './watch.ts';
 
 const seconds = z.number().finite().nonnegative();
@@ -108,16 +108,7 @@ export interface OperatingRow {
   switches: Uint8Array;
 }
 
-export const WARNING_OUTCOMES: readonly WarningOutcome[] = [
-  'open',
-  'true',
-  'repeat',
-  'late',
-  'false',
-  'unseen',
-  'acted',
-];
-export const SWITCH_OUTCOMES: readonly SwitchOutcome[] = ['pending', 'warned', 'late', 'missed', 'blind'];
+export { SWITCH_OUTCOMES, WARNING_OUTCOMES } from './outcomes.ts';
 
 /**
  * One window and rank that was tried, with its best rule on the tuning part. `skill` is on folds that did not choose the
