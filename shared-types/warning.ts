@@ -40,6 +40,8 @@ export interface SwitchEvent {
   /** onset */
   at: number;
   confirmedAt: number;
+  /** server clock, Unix seconds, when it was noted; absent in older stores and in rehearsals */
+  loggedAt?: number;
   /** regime before and after: 0, 1, … from the lowest band up; for one-sided rules 0 quiet, 1 active */
   from: number;
   to: number;

@@ -240,6 +240,7 @@ export function createRunningWatch(
       id: 0,
       watch: memo.watch,
       channel: settings.regimeChannel ?? memo.channels[0]!,
+      loggedAt: around.serverTime(),
       warning: warningAt === null ? null : (warnings.get(warningAt)?.id ?? null),
     };
     tallySwitch(tally, event);

@@ -3,6 +3,7 @@ import { ChannelDescription } from '../../shared-types/channel.ts';
 import { createLeftOutRecords, createRehearsalRecords, readLeftOut } from './annotations.ts';
 import { createGroupCommit } from './groupCommit.ts';
 import { claimFolder } from './lock.ts';
+import { createLogbook } from './logbook.ts';
 import { openDatabase, openDatabaseReader } from './openDatabase.ts';
 import { createReadings, type Readings } from './readings.ts';
 import { createRecords } from './records.ts';
@@ -48,6 +49,7 @@ function storeOver(
   const tails = createTails(database);
   const runs = createRuns(database);
   const records = createRecords(database);
+  const logbook = createLogbook(database);
   const leftOut = createLeftOutRecords(database);
   const rehearsals = createRehearsalRecords(database);
   const readings = createReadings(database);
@@ -121,6 +123,7 @@ function storeOver(
     switches: (query) => read(() => records.switches(query)),
     log: (entry) => write(() => records.log(entry)),
     logEntries: (query) => read(() => records.logEntries(query)),
+    logbook: (query) => read(() => logbook(query)),
     saveMark: (mark) => write(() => leftOut.saveMark(mark)),
     removeMark: (id) => write(() => leftOut.removeMark(id)),
     marks: () => read(() => leftOut.marks()),

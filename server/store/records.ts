@@ -93,6 +93,7 @@ function eventRecords(database: Database) {
     outcome: event.outcome === 'pending' ? stored.outcome : event.outcome,
     warning: event.warning ?? stored.warning,
     lead: event.lead ?? stored.lead,
+    ...(stored.loggedAt === undefined ? {} : { loggedAt: stored.loggedAt }),
   }));
   return {
     saveWarning: (warning: Warning) => warnings.save(warning, warning.channels),

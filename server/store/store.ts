@@ -1,6 +1,7 @@
 import type { ChannelDescription, Columns } from '../../shared-types/channel.ts';
 import type { Mark, StoredCondition } from '../../shared-types/rehearsal.ts';
 import type { LogEntry, SwitchEvent, Warning } from '../../shared-types/warning.ts';
+import type { LogbookQuery, LogbookRow } from './logbook.ts';
 
 /** A frame on its way to disk. `times` null: sample i is at t0 + i·dt. */
 export interface FrameToStore {
@@ -164,6 +165,8 @@ export interface Store extends StoreReader {
 
   log(entry: Omit<LogEntry, 'id'>): Promise<number>;
   logEntries(query: { after?: number; most?: number; newest?: boolean }): Promise<LogEntry[]>;
+  /** warnings, switches and the log in one order of time, newest first unless said */
+  logbook(query: LogbookQuery): Promise<LogbookRow[]>;
 
   /** commits what is queued and closes; everything after rejects with CLOSED */
   close(): Promise<void>;

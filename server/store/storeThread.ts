@@ -117,6 +117,7 @@ function remoteStore(call: Call, notices: readonly string[]): Store {
     switches: true,
     log: true,
     logEntries: true,
+    logbook: true,
     saveMark: true,
     removeMark: true,
     marks: true,
