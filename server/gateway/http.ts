@@ -5,6 +5,7 @@ import express, { type Request, type Response } from 'express';
 import { z } from 'zod';
 import { NewWatch, WatchAction } from '../../shared-types/watch.ts';
 import { answerError, columnsAsked, numberIn, problem, read, sendEither, text } from './httpAnswers.ts';
+import { routeLogbook } from './httpLogbook.ts';
 import { routeMarks } from './httpMarks.ts';
 import type { Hub } from './hub.ts';
 import { samplesAsCsv } from './samplesCsv.ts';
@@ -185,6 +186,7 @@ export function createHttpApp(hub: Hub): express.Express {
   routeWatches(app, hub);
   routeRecords(app, hub);
   routeMarks(app, hub.leftOut);
+  routeLogbook(app, hub);
   const pages = pagesFolder();
   if (existsSync(pages)) app.use(express.static(pages));
   else

@@ -50,6 +50,7 @@ export interface Watches {
   states(): WatchState[];
   models(): ModelSummary[];
   modelJson(name: string): string | null;
+  model(name: string): Model | null;
   /** writes snapshots and traces of what changed */
   saveProgress(): Promise<void>;
 }
@@ -255,6 +256,7 @@ export function createWatches(needs: WatchesNeeds): Watches {
     states: () => [...running.values()].map((watch) => watch.state()),
     models: () => [...models].map(([name, { model }]) => summary(name, model)),
     modelJson: (name) => models.get(name)?.json ?? null,
+    model: (name) => models.get(name)?.model ?? null,
     async saveProgress() {
       const progress = [...running.values()].map((watch) => watch.progress()).filter((each) => each !== null);
       if (progress.length === 0) return;
