@@ -42,23 +42,33 @@ export async function columnsOf(
   return (await ask(`/api/${of.kind}/${encodeURIComponent(of.name)}/columns?${query}`)) as FetchedColumns;
 }
 
-async function send(address: string, body: unknown): Promise<void> {
-  await ask(address, {
+/** Posts JSON; the answer's JSON. @throws Error with the server's own sentence */
+export async function send(address: string, body: unknown, signal?: AbortSignal): Promise<unknown> {
+  return await ask(address, {
     method: 'POST',
     headers: { 'content-type': 'application/json' },
     body: JSON.stringify(body),
+    ...(signal === undefined ? {} : { signal }),
   });
 }
 
-async function ask(address: string, init?: RequestInit): Promise<unknown> {
+/** Asks the server; the answer's JSON. @throws Error with the server's own sentence */
+export async function ask(address: string, init?: RequestInit): Promise<unknown> {
+  const response = await reach(address, init);
+  return await response.json().catch(() => null);
+}
+
+/** Asks the server; a good answer. @throws Error with the server's own sentence; an AbortError if the request was called off */
+export async function reach(address: string, init?: RequestInit): Promise<Response> {
   let response: Response;
   try {
     response = await fetch(address, init);
-  } catch {
+  } catch (error) {
+    if (error instanceof DOMException && error.name === 'AbortError') throw error;
     throw new Error('Foreshift’s server cannot be reached: nothing was changed; try again once it answers.');
   }
+  if (response.ok) return response;
   const body: unknown = await response.json().catch(() => null);
-  if (response.ok) return body;
   const detail = (body as { detail?: unknown } | null)?.detail;
   throw new Error(
     typeof detail === 'string' ? detail : `The server answered ${response.status} ${response.statusText}.`,
