@@ -9,6 +9,7 @@ import { leftOutSeries } from '../rehearsal/leftOut.ts';
 import { channelsRead } from '../rehearsal/prepare.ts';
 import { runRehearsal } from '../rehearsal/rehearsal.ts';
 import { rehearse as rehearseWatch } from '../rehearsal/rehearse.ts';
+import { reportHtml } from '../rehearsal/report.ts';
 import { InputError } from '../signal/inputError.ts';
 import { createRandom } from '../signal/random.ts';
 import { type OptionValues, printJson, ruleOptions, ruleOptionsHelp, runCommand } from './options.ts';
@@ -33,6 +34,7 @@ own settings are judged. RECORDING is a CSV file or stored:NAME.
   --seed N               of the chance behind p-value and intervals (default: 1)
   --data DIR             data folder for stored:NAME (or FORESHIFT_DATA)
   --out MODEL.json       write the chosen settings as a model that can be watched with
+  --report FILE.html     write a report for people: one file, prints on A4
   --json                 print one JSON document
 
 ${ruleOptionsHelp.replace('chosen on the recording', "chosen, or the model's own")}
@@ -55,6 +57,7 @@ const OPTIONS = {
   'false-per-hour': { type: 'string' },
   'come-true': { type: 'string' },
   out: { type: 'string' },
+  report: { type: 'string' },
   ...ruleOptions,
 } as const;
 
@@ -127,8 +130,9 @@ function progressLine(): (done: number, doing: string) => void {
   };
 }
 
-async function write({ model }: RehearsalResult, { out }: OptionValues): Promise<void> {
-  if (out !== undefined) await writeText('out', String(out), model);
+async function write(result: RehearsalResult, { out, report }: OptionValues): Promise<void> {
+  if (out !== undefined) await writeText('out', String(out), result.model);
+  if (report !== undefined) await writeText('report', String(report), reportHtml(result));
 }
 
 async function writeText(option: string, path: string, text: string): Promise<void> {
