@@ -76,6 +76,20 @@ export function reduce(state: PageState, message: FeedMessage): PageState {
   }
 }
 
+/** The state with warnings and switches from further back than the feed has told of. */
+export function withPast(
+  state: PageState,
+  warnings: readonly Warning[],
+  switches: readonly SwitchEvent[],
+): PageState {
+  const known = new Map([...warnings.map((warning) => [warning.id, warning] as const), ...state.warnings]);
+  const past = switches.map((event): FeedMessage => ({ kind: 'switch', switch: event }));
+  return {
+    ...past.reduce(reduce, state),
+    warnings: new Map([...known].sort((a, b) => a[0] - b[0])),
+  };
+}
+
 function welcomed(welcome: Welcome): PageState {
   const switches = new Map<string, readonly SwitchEvent[]>();
   for (const event of welcome.switches)

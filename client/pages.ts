@@ -1,3 +1,5 @@
+import { mountLogbook } from './logbook/page.ts';
+
 /** A page beside Watch. */
 export interface Page {
   /** as the navigation and the window's title call it */
@@ -17,7 +19,10 @@ export interface Visited {
 }
 
 /** The pages, in the order of the navigation. */
-export const PAGES: readonly Page[] = [{ name: 'Watch', path: '#/', mount: null }];
+export const PAGES: readonly Page[] = [
+  { name: 'Watch', path: '#/', mount: null },
+  { name: 'Logbook', path: '#/logbook', mount: mountLogbook },
+];
 
 /** The page an address (`#/rehearse/12`) leads to, and the place within it; the first page where there is none. */
 export function pageAt(hash: string, pages: readonly Page[]): { page: Page; place: string } {

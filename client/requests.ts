@@ -1,4 +1,6 @@
+import type { LogbookPage } from '../shared-types/logbook.ts';
 import type { ModelSummary } from '../shared-types/model.ts';
+import type { SwitchEvent, Warning } from '../shared-types/warning.ts';
 import type { NewWatch, WatchAction } from '../shared-types/watch.ts';
 import type { FetchedColumns } from './columns.ts';
 
@@ -40,6 +42,32 @@ export async function columnsOf(
     columns: String(Math.round(columns)),
   });
   return (await ask(`/api/${of.kind}/${encodeURIComponent(of.name)}/columns?${query}`)) as FetchedColumns;
+}
+
+/**
+ * Warnings and switches of a channel between two times (s), from the newest thousand of its lines.
+ *
+ * @throws Error with the server's own sentence
+ */
+export async function eventsBetween(
+  channel: string,
+  from: number,
+  to: number,
+): Promise<{ warnings: Warning[]; switches: SwitchEvent[] }> {
+  const query = new URLSearchParams({ channel, most: '1000' });
+  query.append('kind', 'warning');
+  query.append('kind', 'switch');
+  // lines of elapsed time (below 1e8) are kept under the server's clock
+  if (from >= 1e8) {
+    query.set('from', String(from));
+    query.set('to', String(to));
+  }
+  const { entries } = (await ask(`/api/logbook?${query}`)) as LogbookPage;
+  const within = entries.filter(({ at }) => at !== null && at >= from && at <= to);
+  return {
+    warnings: within.flatMap(({ warning }) => warning ?? []),
+    switches: within.flatMap((entry) => entry.switch ?? []),
+  };
 }
 
 /** Posts JSON; the answer's JSON. @throws Error with the server's own sentence */

@@ -2,11 +2,11 @@ import type { FeedMessage } from '../../shared-types/feed.ts';
 import type { Warning } from '../../shared-types/warning.ts';
 import { mark, monotonic } from '../dom.ts';
 import { createDrawingData, draw } from '../drawingData.ts';
-import { NOTHING_YET, reduce } from '../feedState.ts';
+import { NOTHING_YET, reduce, withPast } from '../feedState.ts';
 import { lookFor, nextLook } from '../look.ts';
 import { createClock, steer, timeAt } from '../now.ts';
 import { recall, remember } from '../remembered.ts';
-import { act } from '../requests.ts';
+import { act, eventsBetween } from '../requests.ts';
 import { spillInk } from '../strip/ink.ts';
 import { stance } from '../strip/spoken.ts';
 import { type PageView, type StripView, spokenFor } from '../strip/view.ts';
@@ -14,6 +14,7 @@ import { createAttention } from './attention.ts';
 import { askToShelve, explainWatching, showKeys, whoIsHere } from './dialogs.ts';
 import { createFrame } from './frame.ts';
 import { listenForKeys } from './keys.ts';
+import type { StripPlace } from './place.ts';
 import { createStrips } from './strips.ts';
 import { nameOf } from './today.ts';
 
@@ -27,6 +28,8 @@ export interface WatchPage {
   /** the name of the page that is shown, for the window's title */
   called(name: string): void;
   receive(message: FeedMessage): void;
+  /** looks closely at a strip at a moment, as soon as there is one */
+  lookAt(place: StripPlace): void;
   opened(): void;
   closed(): void;
 }
@@ -108,6 +111,21 @@ export function mountWatch(
     help: showKeys,
   });
 
+  let wanted: StripPlace | null = null;
+  const goTo = () => {
+    if (wanted === null || !shown()) return;
+    const { channel, at, seconds } = wanted;
+    // what was warned of shows to the right of its warning
+    const [from, to] = [at - 0.6 * seconds, at + 0.4 * seconds];
+    if (!strips.lookAt(channel, from, to)) return;
+    wanted = null;
+    eventsBetween(channel, from, to).then(({ warnings, switches }) => {
+      view.state = withPast(view.state, warnings, switches);
+      for (const { id } of warnings) called.add(id);
+      strips.paintAll();
+    }, frame.complain);
+  };
+
   const callFor = (warning: Warning) => {
     if (called.has(warning.id)) return;
     called.add(warning.id);
@@ -134,6 +152,7 @@ export function mountWatch(
     view.today = timeAt(server, view.monotonic) ?? 0;
     view.lost = view.state.welcomed && (!connected || monotonic() - heard > LOST_AFTER);
     frame.update(view, connected, monotonic() - heard);
+    goTo();
     attention.show(
       name,
       waiting().map((each) => titleOf(each)),
@@ -159,6 +178,10 @@ export function mountWatch(
     called: (next) => {
       name = next;
       tick();
+    },
+    lookAt: (place) => {
+      wanted = place;
+      goTo();
     },
     opened: () => {
       connected = true;

@@ -29,6 +29,8 @@ export interface Strips {
   move(by: 1 | -1): void;
   read(by: 1 | -1): void;
   live(): void;
+  /** looks closely at a channel's strip between two times (s); false: its time is not known yet */
+  lookAt(channel: string, from: number, to: number): boolean;
 }
 
 interface Entry {
@@ -207,6 +209,17 @@ export function createStrips(page: PageView, actions: StripActions): Strips {
       const next = at < 0 ? (by > 0 ? 0 : list.length - 1) : Math.min(list.length - 1, Math.max(0, at + by));
       list[next]?.focus();
       list[next]?.scrollIntoView({ block: 'nearest' });
+    },
+    lookAt: (channel, from, to) => {
+      const entry = [...entries.values()].find(({ strip }) => strip.key.channel === channel);
+      const now = entry === undefined ? null : (view(entry)?.now ?? null);
+      if (entry === undefined || now === null) return false;
+      // a look cannot reach beyond now: it is moved back instead
+      const beyond = Math.max(0, to - now);
+      closer({ fromAgo: now - from + beyond, toAgo: now - to + beyond, chosen: page.monotonic });
+      entry.strip.root.focus({ preventScroll: true });
+      entry.strip.root.scrollIntoView({ block: 'nearest' });
+      return true;
     },
     read: (by) => {
       const entry = focused() ?? entries.values().next().value ?? null;

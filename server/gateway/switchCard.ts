@@ -67,6 +67,6 @@ async function warningAt(hub: Hub, id: number): Promise<number | null> {
 
 function whyCostUnknown(model: string, operating: readonly unknown[] | undefined): string | null {
   return operating === undefined || operating.length === 0
-    ? `the model "${model}" was not rehearsed, so it does not say what other thresholds do`
+    ? `the model "${model}" carries no table of other thresholds; one that comes out of a rehearsal does`
     : null;
 }

@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import { NOTHING_YET, reduce, SWITCHES_KEPT, WARNINGS_KEPT } from '../../client/feedState.ts';
+import { NOTHING_YET, reduce, SWITCHES_KEPT, WARNINGS_KEPT, withPast } from '../../client/feedState.ts';
 import type { FeedMessage } from '../../shared-types/feed.ts';
 import { channel, switchAt, warning, watch } from './fixtures.ts';
 
@@ -93,5 +93,19 @@ describe('what the server says becomes the page’s state', () => {
     for (let i = 0; i < SWITCHES_KEPT + 5; i++)
       state = reduce(state, { kind: 'switch', switch: switchAt(i, i % 2, 1 - (i % 2)) });
     expect(state.switches.get('a')!.length).toBe(SWITCHES_KEPT);
+  });
+});
+
+describe('the past fetched for a close look', () => {
+  it('takes its place among what is known, which it does not overwrite', () => {
+    const known = reduce(NOTHING_YET, { kind: 'warning', warning: warning({ id: 7, outcome: 'true' }) });
+    const state = withPast(
+      known,
+      [warning({ id: 7, outcome: 'open' }), warning({ id: 3 })],
+      [switchAt(20, 0, 1), switchAt(10, 1, 0)],
+    );
+    expect([...state.warnings.keys()]).toEqual([3, 7]);
+    expect(state.warnings.get(7)!.outcome).toBe('true');
+    expect(state.switches.get('a')!.map(({ at }) => at)).toEqual([10, 20]);
   });
 });

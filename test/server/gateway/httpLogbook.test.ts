@@ -141,7 +141,7 @@ describe('the card of a switch', () => {
     const near = [...card.t].findIndex((time) => time > 2.05);
     expect(card.signal[near]!).toBeCloseTo(-2 * Math.cos(2.1 / 2), 6);
     expect(card.catching).toBeNull();
-    expect(card.notKnown).toMatch(/model "swing" was not rehearsed/);
+    expect(card.notKnown).toMatch(/model "swing" carries no table of other thresholds/);
   });
 
   it('names the strictest threshold that would have caught it, with its cost, from the model’s own table', async () => {
