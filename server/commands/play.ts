@@ -161,6 +161,11 @@ async function run(argv: string[]): Promise<number> {
     process.stdout.write(HELP);
     return 0;
   }
+  if (process.channel) {
+    // played for a server: without it there is nobody to play to
+    process.once('disconnect', () => process.exit(1));
+    process.channel.unref();
+  }
   if (positionals.length !== 1)
     throw new InputError(
       'ONE_RECORDING',

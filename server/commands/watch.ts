@@ -199,6 +199,10 @@ async function start(choice: Choice): Promise<RunningServer> {
       createWatch,
       readModel: modelFromJson,
       warn: (text) => process.stderr.write(`foreshift watch: ${text}\n`),
+      player: {
+        program: [process.execPath, fileURLToPath(new URL('./main.js', import.meta.url))],
+        data: choice.data,
+      },
     });
   } catch (error) {
     if ((error as NodeJS.ErrnoException).code !== 'EADDRINUSE') throw error;

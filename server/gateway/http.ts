@@ -7,7 +7,11 @@ import { NewWatch, WatchAction } from '../../shared-types/watch.ts';
 import { answerError, columnsAsked, numberIn, problem, read, sendEither, text } from './httpAnswers.ts';
 import { routeLogbook } from './httpLogbook.ts';
 import { routeMarks } from './httpMarks.ts';
+import { routePlays } from './httpPlays.ts';
+import { routeRecordingColumns, routeRehearsals } from './httpRehearsals.ts';
 import type { Hub } from './hub.ts';
+import type { Plays } from './plays.ts';
+import type { Rehearsals } from './rehearsals.ts';
 import { samplesAsCsv } from './samplesCsv.ts';
 import { Refused } from './watches.ts';
 
@@ -162,7 +166,7 @@ function routeRecords(app: express.Express, hub: Hub): void {
 const FIRST_PAGE_MISSING = 'The pages are not built; run npm run build, then reload.';
 
 /** HTTP: health, what is known, what a person may do, and the pages. Errors are RFC 9457 problem details. */
-export function createHttpApp(hub: Hub): express.Express {
+export function createHttpApp(hub: Hub, work: { rehearsals: Rehearsals; plays: Plays }): express.Express {
   const app = express();
   app.disable('x-powered-by');
   app.use((request, response, next) => {
@@ -187,6 +191,9 @@ export function createHttpApp(hub: Hub): express.Express {
   routeRecords(app, hub);
   routeMarks(app, hub.leftOut);
   routeLogbook(app, hub);
+  routeRecordingColumns(app, hub);
+  routeRehearsals(app, hub, work.rehearsals);
+  routePlays(app, work.plays);
   const pages = pagesFolder();
   if (existsSync(pages)) app.use(express.static(pages));
   else

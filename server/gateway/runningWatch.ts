@@ -66,7 +66,8 @@ export interface RunningWatch {
   /** once a second or so: shelves that end, spans that run out, the grade */
   tick(): void;
   act(action: WatchAction): void;
-  setUse(use: WatchState['use']): void;
+  /** `why` for the log */
+  setUse(use: WatchState['use'], why?: string): void;
   /** marks or conditions changed: from now on they are as they are now */
   leftOutChanged(): void;
   /** the first page has it */
@@ -397,7 +398,7 @@ export function createRunningWatch(
           return apply({ kind: 'return to service' });
       }
     },
-    setUse(use) {
+    setUse(use, why) {
       if (use === memo.use) return;
       if (memo.use === 'taken out of use') {
         // What passed while it was out of use was never seen: it begins anew.
@@ -409,7 +410,7 @@ export function createRunningWatch(
         memo.gradeSince = null;
       }
       memo.use = use;
-      log('watch', use);
+      log('watch', why === undefined ? use : `${use}: ${why}`);
       snapshotBytes = encoder.encode(checkpointNow());
       save();
       around.touch(memo.watch);

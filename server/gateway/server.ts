@@ -11,6 +11,8 @@ import type { Moment } from './channels.ts';
 import { createFeedSession, type FeedFacts } from './feed.ts';
 import { createHttpApp, whyNotAllowed } from './http.ts';
 import { createHub, type Hub } from './hub.ts';
+import { createPlays, type Player } from './plays.ts';
+import { createRehearsals } from './rehearsals.ts';
 import type { Surroundings } from './runningWatch.ts';
 
 export interface ServerOptions {
@@ -26,6 +28,8 @@ export interface ServerOptions {
   readModel(json: string): Model;
   /** told in sentences what a person should know */
   warn(text: string): void;
+  /** the built program that plays recordings, and the data folder it reads them from; left out: nothing is played */
+  player?: Player;
   clock?: () => Moment;
 }
 
@@ -162,6 +166,9 @@ function listening(http: Server, port: number, host: string): Promise<number> {
   });
 }
 
+const ingestAddress = (listen: string, port: number): string =>
+  `ws://${listen === '::1' ? '[::1]' : listen}:${port}/ingest`;
+
 /**
  * Starts the server: HTTP and the two WebSockets on one port, over a store that it closes in the end.
  *
@@ -182,20 +189,40 @@ export async function startServer(options: ServerOptions): Promise<RunningServer
     options.warn(notice);
     hub.journal.log({ kind: 'server', channel: null, watch: null, by: null, text: notice });
   }
-  const http = createServer({ maxHeaderSize: 16 * 1024 }, createHttpApp(hub));
+  const rehearsals = await createRehearsals({
+    store,
+    journal: hub.journal,
+    gap: hub.settings.recordingGap,
+    program,
+    serverTime: () => now().server,
+    flushFrames: hub.recorder.flush,
+    failed: options.warn,
+  });
+  const plays = createPlays({
+    player: options.player ?? null,
+    journal: hub.journal,
+    channels: hub.channels,
+    ingest: () => ingestAddress(options.listen, port),
+  });
+  const app = createHttpApp(hub, { rehearsals, plays });
+  const http = createServer({ maxHeaderSize: 16 * 1024 }, app);
   const ingest = socketServer(INGEST_PROTOCOL, LARGEST_MESSAGE_BYTES);
   const feed = socketServer(FEED_PROTOCOL, LARGEST_REQUEST_BYTES);
   route(http, { '/ingest': ingest, '/feed': feed });
-  let port: number;
+  let port = 0;
   try {
     port = await listening(http, options.port, options.listen);
   } catch (error) {
     await store.close();
     throw error;
   }
-  const ingestAddress = `ws://${options.listen}:${port}/ingest`;
   serveProducers(hub, ingest);
-  servePages(hub, feed, { program, startedAt: now().server, demo, ingestAddress });
+  servePages(hub, feed, {
+    program,
+    startedAt: now().server,
+    demo,
+    ingestAddress: ingestAddress(options.listen, port),
+  });
   const ticking = setInterval(hub.tick, 1000);
   const liveness = watchLiveness([ingest, feed]);
   hub.journal.log({ kind: 'server', channel: null, watch: null, by: null, text: `${program} started` });
@@ -205,6 +232,7 @@ export async function startServer(options: ServerOptions): Promise<RunningServer
     clearInterval(ticking);
     clearInterval(liveness);
     http.close();
+    await Promise.all([plays.close(), rehearsals.close()]);
     for (const socket of ingest.clients) socket.pause();
     hub.journal.log({ kind: 'server', channel: null, watch: null, by: null, text: `${program} stopped` });
     await hub.close();

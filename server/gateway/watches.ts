@@ -38,6 +38,8 @@ export interface Watches {
   push(frame: Frame): void;
   tick(): void;
   add(wanted: NewWatch): Promise<WatchState>;
+  /** a watch in the place of those in use on the same channels, with their time of reaction */
+  replace(wanted: Omit<NewWatch, 'reaction'>): Promise<WatchState>;
   /** stores a model under its name, or under a free one when that name has another content; returns the name */
   addModel(json: string): Promise<string>;
   act(watch: string, action: WatchAction): WatchState;
@@ -151,6 +153,56 @@ export function createWatches(needs: WatchesNeeds): Watches {
       .map(({ memo }) => memo.watch),
   });
 
+  const add = async (wanted: NewWatch): Promise<WatchState> => {
+    const entry = models.get(wanted.model);
+    if (!entry)
+      throw new Refused(
+        404,
+        'NO_SUCH_MODEL',
+        `there is no model "${wanted.model}"; GET /api/models lists them`,
+      );
+    const expected = entry.model.channels.map(({ channel }) => channel);
+    if (wanted.channels.length !== expected.length)
+      throw new Refused(
+        400,
+        'OTHER_CHANNELS',
+        `channels names ${wanted.channels.length}, the model has ${expected.length} (${expected.join('; ')}); name one for each`,
+      );
+    const name = wanted.name ?? `${wanted.model} on ${wanted.channels.join(', ')}`.slice(0, 80);
+    const memo: WatchMemo = {
+      watch: watchId(name, (id) => running.has(id)),
+      name,
+      model: wanted.model,
+      channels: wanted.channels,
+      reaction: wanted.reaction,
+      use: 'in use',
+      alarm: NO_ALARM,
+      gradeSince: null,
+    };
+    let watch: RunningWatch;
+    try {
+      watch = createRunningWatch(memo, entry.model, null, { warnings: [], switches: [] }, around);
+    } catch (error) {
+      throw new Refused(400, 'CANNOT_WATCH', (error as Error).message);
+    }
+    running.set(memo.watch, watch);
+    needs.flushFrames();
+    await store.saveWatch({
+      watch: memo.watch,
+      settings: JSON.stringify(memo),
+      snapshot: watch.firstSnapshot(),
+    });
+    journal.log({
+      kind: 'watch',
+      channel: memo.channels[0]!,
+      watch: memo.watch,
+      by: null,
+      text: `"${name}" begins`,
+    });
+    needs.touch(memo.watch);
+    return watch.state();
+  };
+
   return {
     async start() {
       for (const { name, json } of await store.models()) {
@@ -188,54 +240,14 @@ export function createWatches(needs: WatchesNeeds): Watches {
       journal.log({ kind: 'model', channel: null, watch: null, by: null, text: `model "${name}" added` });
       return name;
     },
-    async add(wanted) {
-      const entry = models.get(wanted.model);
-      if (!entry)
-        throw new Refused(
-          404,
-          'NO_SUCH_MODEL',
-          `there is no model "${wanted.model}"; GET /api/models lists them`,
-        );
-      const expected = entry.model.channels.map(({ channel }) => channel);
-      if (wanted.channels.length !== expected.length)
-        throw new Refused(
-          400,
-          'OTHER_CHANNELS',
-          `channels names ${wanted.channels.length}, the model has ${expected.length} (${expected.join('; ')}); name one for each`,
-        );
-      const name = wanted.name ?? `${wanted.model} on ${wanted.channels.join(', ')}`.slice(0, 80);
-      const memo: WatchMemo = {
-        watch: watchId(name, (id) => running.has(id)),
-        name,
-        model: wanted.model,
-        channels: wanted.channels,
-        reaction: wanted.reaction,
-        use: 'in use',
-        alarm: NO_ALARM,
-        gradeSince: null,
-      };
-      let watch: RunningWatch;
-      try {
-        watch = createRunningWatch(memo, entry.model, null, { warnings: [], switches: [] }, around);
-      } catch (error) {
-        throw new Refused(400, 'CANNOT_WATCH', (error as Error).message);
-      }
-      running.set(memo.watch, watch);
-      needs.flushFrames();
-      await store.saveWatch({
-        watch: memo.watch,
-        settings: JSON.stringify(memo),
-        snapshot: watch.firstSnapshot(),
-      });
-      journal.log({
-        kind: 'watch',
-        channel: memo.channels[0]!,
-        watch: memo.watch,
-        by: null,
-        text: `"${name}" begins`,
-      });
-      needs.touch(memo.watch);
-      return watch.state();
+    add,
+    async replace(wanted) {
+      const before = [...running.values()].filter(
+        ({ memo }) => memo.use === 'in use' && memo.channels.join('\n') === wanted.channels.join('\n'),
+      );
+      const state = await add({ ...wanted, reaction: before[0]?.memo.reaction ?? 30 });
+      for (const old of before) old.setUse('taken out of use', `"${state.name}" takes over`);
+      return state;
     },
     act(id, action) {
       const watch = get(id);
