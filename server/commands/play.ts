@@ -206,7 +206,8 @@ async function stream(
     if (state.kind === 'lost')
       process.stderr.write(`\nforeshift play: no connection to ${how.to} (${state.reason}); trying again\n`);
     if (state.kind === 'refused') {
-      refused++;
+      // what could not be stored is sent again
+      if (state.code !== 'NOT_STORED') refused++;
       process.stderr.write(`\nforeshift play: ${state.error}\n`);
     }
   };

@@ -157,10 +157,11 @@ export function createProducer(options: ProducerOptions): Producer {
   const hear = (reply: IngestReply) => {
     heardAt = Date.now();
     if ('resume' in reply) acknowledge(reply.channel, reply.resume - 1);
-    else if ('ack' in reply) acknowledge(reply.channel, reply.ack);
-    else if ('window' in reply) {
-      window = reply.window;
+    else if ('ack' in reply) {
       retryIn = FIRST_RETRY_SECONDS;
+      acknowledge(reply.channel, reply.ack);
+    } else if ('window' in reply) {
+      window = reply.window;
       say({ kind: 'connected' });
     } else {
       const { error, code, channel = null, seq = null } = reply;

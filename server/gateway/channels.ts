@@ -25,6 +25,8 @@ interface Channel {
   gaps: number;
   first: number | null;
   newest: number | null;
+  /** time of the newest sample on disk */
+  durable: number | null;
   value: number | null;
   /** the newest value was finite: a run of missing values counts as one gap */
   sawValue: boolean;
@@ -52,8 +54,10 @@ export interface Channels {
   description(channel: string): ChannelDescription;
   /** notes the samples of a frame; returns how many gaps it showed */
   take(frame: FrameToStore, moment: Moment): number;
-  /** a frame taken could not be stored: its samples have no ordinals */
-  notStored(channel: string, samples: number): void;
+  /** a frame taken is on disk */
+  stored(frame: FrameToStore): void;
+  /** a frame taken could not be stored: its samples have no ordinals, and it may come again */
+  notStored(frame: FrameToStore): void;
   connect(channel: string, by: 1 | -1): void;
   hole(channel: string, frames: number): void;
   refused(channel: string, reason: string): void;
@@ -80,6 +84,7 @@ function createChannel(description: ChannelDescription): Channel {
     gaps: 0,
     first: null,
     newest: null,
+    durable: null,
     value: null,
     sawValue: true,
     connected: 0,
@@ -216,6 +221,7 @@ export function createChannels(): Channels {
           gaps,
           first,
           newest,
+          durable: newest,
           value,
         });
     },
@@ -242,8 +248,14 @@ export function createChannels(): Channels {
       noteArrival(channel.clock, channel.newest, moment.server);
       return gaps;
     },
-    notStored(name, samples) {
-      get(name).samples -= samples;
+    stored(frame) {
+      get(frame.channel).durable = lastTime(frame);
+    },
+    notStored(frame) {
+      const channel = get(frame.channel);
+      channel.samples -= frame.values.length;
+      channel.newest = channel.durable;
+      if (channel.durable === null) channel.first = null;
     },
     connect(name, by) {
       get(name).connected += by;

@@ -73,6 +73,8 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
   const touched$ = new Subject<string>();
   const holders = new Map<string, Holder>();
   const silentNow = new Map<string, boolean>();
+  /** beginning of the newest frame that pages had of each channel */
+  const drawn = new Map<string, number>();
   let trouble: string | null = null;
 
   const say = (message: FeedMessage) => news$.next(message);
@@ -115,11 +117,15 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
     const gaps = channels.take(frame, now());
     if (gaps > 0) attempt(store.countFault(frame.channel, 'gap', gaps));
     recorder.append(frame, (problem) => {
-      if (problem !== null) channels.notStored(frame.channel, frame.values.length);
+      if (problem === null) channels.stored(frame);
+      else channels.notStored(frame);
       settled(problem);
     });
     watches.push(frame);
     touched$.next(`channel ${frame.channel}`);
+    // a frame that could not be stored comes again: it is drawn already
+    if (frame.t0 <= (drawn.get(frame.channel) ?? Number.NEGATIVE_INFINITY)) return;
+    drawn.set(frame.channel, frame.t0);
     frames$.next(frame);
   };
 

@@ -71,7 +71,8 @@ function toStore(frame: DecodedFrame, run: string, seq: number, t0: number): Fra
  *
  * With hello: runs resume where the store has them; a frame sent again is ignored and acknowledged, other content
  * under a known number is an error, a skipped number is a recorded hole, an unusable frame is answered in words,
- * counts as consumed and harms no other; acknowledgements are cumulative and come once frames are durable. A frame
+ * counts as consumed and harms no other; acknowledgements are cumulative and come once frames are durable. A frame that
+ * cannot be written is told and ends the session with 1013: what was not acknowledged is to be sent again. A frame
  * beyond the window is not consumed: it is refused in words, and so is what follows, until it is sent again; a
  * producer that goes on for a whole window is closed with 1008. Without hello: frames are stamped on arrival.
  */
@@ -102,12 +103,23 @@ export function createIngestSession(doors: IngestDoors, limits: IngestLimits): I
   const settledAs = (channel: string, run: Run, seq: number) => (problem: string | null) => {
     unacknowledged--;
     if (mode === 'ended') return;
-    if (problem !== null) refuse('NOT_STORED', problem, channel, seq);
+    if (problem !== null) return lost(problem, channel, seq);
     run.durable = Math.max(run.durable, seq);
     if (flushQueued) return;
     flushQueued = true;
     // A commit settles many frames in one go: one acknowledgement a channel answers them all.
     queueMicrotask(flushAcknowledgements);
+  };
+
+  /**
+   * A frame could not be written. Were later ones taken, it would look consumed after the next start: so nothing more
+   * is taken, and the producer comes again, hears where each run stands on disk, and sends on from there.
+   */
+  const lost = (problem: string, channel: string, seq: number) => {
+    flushAcknowledgements();
+    refuse('NOT_STORED', problem, channel, seq);
+    mode = 'ended';
+    doors.close(TRY_AGAIN_LATER, `${problem}; connect again and send on from resume`.slice(0, 100));
   };
 
   const again = (channel: string, run: Run, seq: number, digest: number) => {

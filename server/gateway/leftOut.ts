@@ -9,6 +9,8 @@ import { Refused } from './watches.ts';
 export interface LeftOutRegistry {
   marks(): Mark[];
   conditions(): StoredCondition[];
+  /** counts the changes since the start */
+  version(): number;
   /** for a watch of these channels: what is marked on any of them is left out on all of them */
   of(channels: readonly string[]): { marks: GateMark[]; conditions: GateCondition[] };
   addMark(mark: NewMark): Promise<Mark>;
@@ -38,11 +40,16 @@ export async function createLeftOut({
   store,
   channels,
   journal,
-  changed,
+  changed: told,
 }: LeftOutNeeds): Promise<LeftOutRegistry> {
   const marks = new Map((await store.marks()).map((mark) => [mark.id, mark]));
   const conditions = new Map((await store.conditions()).map((condition) => [condition.id, condition]));
 
+  let version = 0;
+  const changed = () => {
+    version++;
+    told();
+  };
   const log = (channel: string, text: string, by = '') =>
     journal.log({ kind: 'mark', channel, watch: null, by: by === '' ? null : by, text });
   const know = (channel: string) => {
@@ -79,6 +86,7 @@ export async function createLeftOut({
   return {
     marks: () => [...marks.values()],
     conditions: () => [...conditions.values()],
+    version: () => version,
     of: (wanted) => ({
       marks: [...marks.values()]
         .filter(({ channel }) => wanted.includes(channel))

@@ -47,6 +47,8 @@ export interface RehearsalNeeds {
   program: string;
   /** server clock, Unix seconds */
   serverTime(): number;
+  /** changes whenever something else is left out */
+  leftOutVersion(): number;
   /** hands the frames gathered so far to the store */
   flushFrames(): void;
   /** told what could not be stored */
@@ -98,6 +100,9 @@ export async function createRehearsals(needs: RehearsalNeeds): Promise<Rehearsal
     needs.flushFrames();
     return readStored(name, { store, gap: needs.gap, where: 'the store' }, channels);
   };
+
+  const keyOf = (recording: string, channel: string) =>
+    [needs.leftOutVersion(), recording, channel].join('\n');
 
   const begin = async (entry: Entry) => {
     const { request } = entry.state;
@@ -253,13 +258,13 @@ export async function createRehearsals(needs: RehearsalNeeds): Promise<Rehearsal
     },
     card: async (id, index, row) => rehearsalCard(await result(id), index, row, store),
     preview: (recording, channel, regime) =>
-      helper.ask<'preview'>(`${recording}\n${channel}`, () => readRecording(recording, [channel]), {
+      helper.ask<'preview'>(keyOf(recording, channel), () => readRecording(recording, [channel]), {
         kind: 'preview',
         channel,
         regime,
       }),
     proposal: (recording, channel) =>
-      helper.ask<'proposal'>(`${recording}\n${channel}`, () => readRecording(recording, [channel]), {
+      helper.ask<'proposal'>(keyOf(recording, channel), () => readRecording(recording, [channel]), {
         kind: 'proposal',
         channel,
       }),

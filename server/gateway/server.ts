@@ -195,6 +195,7 @@ export async function startServer(options: ServerOptions): Promise<RunningServer
     gap: hub.settings.recordingGap,
     program,
     serverTime: () => now().server,
+    leftOutVersion: hub.leftOut.version,
     flushFrames: hub.recorder.flush,
     failed: options.warn,
   });

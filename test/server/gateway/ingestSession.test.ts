@@ -177,16 +177,20 @@ describe('a producer with hello', () => {
     expect(closed).toBe(1008);
   });
 
-  it('is told of a frame that could not be written, once', async () => {
+  it('is told of a frame that could not be written, and hung up on with 1013 before any later one looks durable', async () => {
     await greet();
-    send(0);
-    send(1);
+    for (let seq = 0; seq < 4; seq++) send(seq);
+    pending.shift()!(null);
     pending.shift()!('the disk is full');
-    await durable(1);
+    pending.shift()!(null);
+    pending.shift()!('the disk is full');
+    send(4);
+    await tick();
     expect(replies).toMatchObject([
-      { code: 'NOT_STORED', channel: 'c', seq: 0 },
-      { ack: 1, channel: 'c' },
+      { ack: 0, channel: 'c' },
+      { code: 'NOT_STORED', channel: 'c', seq: 1 },
     ]);
+    expect([closed, taken.length]).toEqual([1013, 4]);
   });
 
   it('may send frames before the answer to its hello', async () => {

@@ -1,0 +1,106 @@
+import { afterEach, expect, it } from 'vitest';
+import { createProducer } from '../../server/commands/producer.ts';
+import { type RunningServer, startServer } from '../../server/gateway/server.ts';
+import { modelFromJson } from '../../server/model/modelFile.ts';
+import { openStore } from '../../server/store/openStore.ts';
+import { createWatch } from '../../server/watch/watch.ts';
+import type { ChannelState } from '../../shared-types/channel.ts';
+import { api, connect } from '../server/gateway/harness.ts';
+import { temporaryFolder } from '../server/store/temporaryFolder.ts';
+
+const servers: RunningServer[] = [];
+afterEach(async () => {
+  for (const server of servers.splice(0)) await server.close();
+});
+
+const SAMPLES = 2000;
+const LARGEST_BYTES = 700_000;
+/** stored beforehand; taking it away makes room again */
+const BALLAST_BYTES = 300_000;
+
+/** noise, which takes room on disk as it is */
+const valuesOf = (seq: number): number[] =>
+  Array.from({ length: SAMPLES }, (_, i) => {
+    const noise = Math.sin((seq * SAMPLES + i) * 12.9898) * 43758.5453;
+    return noise - Math.floor(noise);
+  });
+
+async function cramped() {
+  const store = openStore(temporaryFolder(), { commitEvery: 0.01, largestBytes: LARGEST_BYTES });
+  await store.saveRehearsal({ id: '1', state: '{"state":"stopped"}', result: new Uint8Array(BALLAST_BYTES) });
+  const server = await startServer({
+    port: 0,
+    listen: '127.0.0.1',
+    store,
+    demo: false,
+    program: 'foreshift test',
+    createWatch,
+    readModel: modelFromJson,
+    warn: () => {},
+  });
+  servers.push(server);
+  return { server, store };
+}
+
+const HELLO = { hello: 1, run: 'r', channels: [{ channel: 'c', interval: 0.001 }] };
+
+it('on a full disk nothing is acknowledged that is not stored, and with room again the run goes on without a hole', async () => {
+  const { server, store } = await cramped();
+  const first = await connect(server.port);
+  first.say(HELLO);
+  await first.heard((reply) => 'window' in reply);
+  const send = (line: typeof first, seq: number) =>
+    line.say({ channel: 'c', seq, t0: seq * 2, dt: 0.001, values: valuesOf(seq) });
+  // three at a time, so that some are on disk before it is full
+  for (let seq = 0; seq < 60 && first.replies.every((reply) => !('code' in reply)); seq += 3) {
+    for (let i = seq; i < seq + 3; i++) send(first, i);
+    await first.heard((reply) => 'code' in reply || ('ack' in reply && reply.ack === seq + 2));
+  }
+  expect((await first.closed).code).toBe(1013);
+  const acknowledged = Math.max(-1, ...first.replies.flatMap((reply) => ('ack' in reply ? [reply.ack] : [])));
+  expect([acknowledged > 0, acknowledged < 59]).toEqual([true, true]);
+  expect(first.replies.some((reply) => 'code' in reply && reply.code === 'NOT_STORED')).toBe(true);
+  expect((await store.run('c', 'r')).next).toBe(acknowledged + 1);
+  expect((await api<{ trouble: string }>(server.port, '/health')).json.trouble).toContain(
+    'not being recorded',
+  );
+
+  await store.removeRehearsal('1');
+  const again = await connect(server.port);
+  again.say(HELLO);
+  const answer = await again.heard((reply) => 'resume' in reply);
+  expect(answer).toEqual({ resume: acknowledged + 1, channel: 'c' });
+  await again.heard((reply) => 'window' in reply);
+  const last = acknowledged + 6;
+  for (let seq = acknowledged + 1; seq <= last; seq++) send(again, seq);
+  await again.heard((reply) => 'ack' in reply && reply.ack === last);
+  const { values } = await store.samplesFrom('c', 0, 1e6);
+  expect(values).toEqual(
+    Float64Array.from(Array.from({ length: last + 1 }, (_, seq) => valuesOf(seq)).flat()),
+  );
+  const [channel] = (await api<ChannelState[]>(server.port, '/api/channels')).json;
+  expect(channel).toMatchObject({ holes: 0, samples: (last + 1) * SAMPLES });
+});
+
+it('a producer that keeps what is not acknowledged loses nothing to a disk that was full for a while', async () => {
+  const { server, store } = await cramped();
+  const refusals = new Set<string>();
+  const producer = createProducer({
+    to: `ws://127.0.0.1:${server.port}/ingest`,
+    run: 'r',
+    channels: [{ channel: 'c', interval: 0.001 }],
+    onState: (state) => {
+      if (state.kind === 'refused') refusals.add(state.code);
+      // room is made once the disk was full
+      if (state.kind === 'refused' && state.code === 'NOT_STORED') void store.removeRehearsal('1');
+    },
+  });
+  let seq = 0;
+  for (; seq < 24; seq++)
+    producer.send('c', { t0: seq * 2, dt: 0.001, values: Float64Array.from(valuesOf(seq)) });
+  await producer.idle();
+  await producer.close();
+  expect([...refusals]).toEqual(['NOT_STORED']);
+  const { values } = await store.samplesFrom('c', 0, 1e6);
+  expect(values).toEqual(Float64Array.from(Array.from({ length: seq }, (_, i) => valuesOf(i)).flat()));
+});
