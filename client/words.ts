@@ -1,6 +1,6 @@
 import type { ChannelState } from '../shared-types/channel.ts';
 import type { Interval } from '../shared-types/score.ts';
-import type { AlarmState, Likeness, Sight } from '../shared-types/watch.ts';
+import type { AlarmState, Likeness, Sight, WatchState } from '../shared-types/watch.ts';
 
 const MINUS = '−';
 const DASH = '–';
@@ -99,6 +99,12 @@ export function plural(word: string): string {
 /** Whether the watch sees, in words; null when it does. */
 export function sightText(sight: Sight): string | null {
   return sight.kind === 'blind' ? `blind: ${spanText(sight.left)} until the window is full` : null;
+}
+
+/** Why a watch does not count what comes now, in words; null when it does. */
+export function leftOutText({ leftOut, waitsFor }: Pick<WatchState, 'leftOut' | 'waitsFor'>): string | null {
+  if (waitsFor !== null) return `waiting for ${waitsFor}, which is silent: only it tells what counts`;
+  return leftOut === null ? null : `left out: ${leftOut}`;
 }
 
 /** Whether the data look like those the model was fitted on. */

@@ -6,6 +6,7 @@ import {
   badgeOf,
   channelRemarks,
   decimalsFor,
+  leftOutText,
   likenessText,
   numberText,
   sightText,
@@ -61,10 +62,12 @@ export function createSide(): Side {
         watch === null ? null : `model ${watch.model} · window ${spanText(watch.window)}, rank ${watch.rank}`,
       );
       say(rule, watch === null ? null : ruleText(watch, channel.unit));
-      say(sight, watch === null ? null : sightText(watch.sight));
+      say(sight, watch === null ? null : (leftOutText(watch) ?? sightText(watch.sight)));
       say(
         likeness,
-        watch === null || watch.sight.kind === 'blind' ? null : likenessText(watch.likeness, today),
+        watch === null || watch.sight.kind === 'blind' || leftOutText(watch) !== null
+          ? null
+          : likenessText(watch.likeness, today),
       );
       mark(likeness, 'data-likeness', watch?.likeness.kind ?? null);
     },

@@ -1,6 +1,6 @@
 import { button, element, mark, say } from '../dom.ts';
 import { headline, lastText, leftText, phaseOf, promiseText, unwarnedText } from '../warningWords.ts';
-import { clockText } from '../words.ts';
+import { clockText, leftOutText } from '../words.ts';
 import { type StripView, spokenFor } from './view.ts';
 
 /** What a strip can ask the page to do. */
@@ -158,9 +158,11 @@ function quietWords(view: StripView): Words {
   const watch = view.watch!;
   const what = view.channel.silent
     ? 'No data, no warning'
-    : watch.sight.kind === 'blind'
-      ? 'Blind: cannot warn yet'
-      : 'No warning open';
+    : leftOutText(watch) !== null
+      ? 'Left out: cannot warn now'
+      : watch.sight.kind === 'blind'
+        ? 'Blind: cannot warn yet'
+        : 'No warning open';
   return {
     ...NOTHING,
     what,

@@ -8,6 +8,7 @@ import {
   decimalsFor,
   factsText,
   intervalText,
+  leftOutText,
   likenessText,
   minuteText,
   numberText,
@@ -89,6 +90,14 @@ describe('times', () => {
 });
 
 describe('states are said in words', () => {
+  it('says why a watch does not count what comes, the silent channel it waits for first', () => {
+    expect(leftOutText({ leftOut: 'calibration', waitsFor: null })).toBe('left out: calibration');
+    expect(leftOutText({ leftOut: 'bath above 30', waitsFor: 'bath' })).toMatch(
+      /^waiting for bath, which is silent/,
+    );
+    expect(leftOutText({ leftOut: null, waitsFor: null })).toBeNull();
+  });
+
   it('says how long a watch is blind yet, and nothing when it sees', () => {
     expect(sightText({ kind: 'blind', left: 0.2 })).toBe('blind: 0.2 s until the window is full');
     expect(sightText({ kind: 'seeing' })).toBeNull();
