@@ -1,4 +1,5 @@
 import { mountLogbook } from './logbook/page.ts';
+import { mountRehearse } from './rehearse/page.ts';
 
 /** A page beside Watch. */
 export interface Page {
@@ -21,6 +22,7 @@ export interface Visited {
 /** The pages, in the order of the navigation. */
 export const PAGES: readonly Page[] = [
   { name: 'Watch', path: '#/', mount: null },
+  { name: 'Rehearse', path: '#/rehearse', mount: mountRehearse },
   { name: 'Logbook', path: '#/logbook', mount: mountLogbook },
 ];
 

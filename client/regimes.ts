@@ -14,7 +14,7 @@ export interface Stretch {
  * @param regimeNow the regime at `to`; null: not known
  */
 export function secondRegime(
-  switches: readonly SwitchEvent[],
+  switches: readonly Pick<SwitchEvent, 'at' | 'from' | 'to'>[],
   from: number,
   to: number,
   regimeNow: number | null,

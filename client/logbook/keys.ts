@@ -42,6 +42,8 @@ export function listenForKeys(shown: () => boolean, table: HTMLElement, actions:
       event.preventDefault();
       actions.move(event.key === 'ArrowDown' ? 1 : -1);
     } else if (event.key === 'Enter' && event.target === row)
-      row.querySelector<HTMLElement>('.logDo button, .logDo a')?.click();
+      (
+        row.querySelector<HTMLElement>('.logDo button') ?? row.querySelector<HTMLElement>('.logDo a')
+      )?.click();
   });
 }

@@ -45,7 +45,7 @@ export function createField<C extends HTMLElement>(control: C, { name, help, uni
 
 /** A line to write on; numbers get the keys for numbers. */
 export function textControl(kind: 'text' | 'number' | 'rule' = 'text'): HTMLInputElement {
-  const input = element('input', kind === 'text' ? '' : kind);
+  const input = element('input', { text: '', number: 'numeric', rule: 'rule' }[kind]);
   input.type = 'text';
   input.autocomplete = 'off';
   input.spellcheck = false;

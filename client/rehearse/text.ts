@@ -2,6 +2,7 @@ import type {
   ChosenSettings,
   OperatingRow,
   RehearsalRequest,
+  RehearsalResult,
   RulePreview,
   VerdictKind,
 } from '../../shared-types/rehearsal.ts';
@@ -208,4 +209,14 @@ export function requestText(request: RehearsalRequest): string {
 /** "about 40 s left", '' while it is not known. */
 export function leftText(secondsLeft: number | null): string {
   return secondsLeft === null ? '' : `about ${spanText(Math.max(1, Math.round(secondsLeft)))} left`;
+}
+
+/** What was judged: "Judged on 52 min of 1 h 44 min; chosen on the part before." */
+export function judgedText({ recordings }: Pick<RehearsalResult, 'recordings'>): string {
+  const whole = recordings.reduce((sum, { from, to }) => sum + to - from, 0);
+  const judged = recordings.reduce(
+    (sum, { from, to, judgedFrom }) => sum + to - Math.max(from, judgedFrom),
+    0,
+  );
+  return `Chosen on the first ${spanText(whole - judged)}, judged on the ${spanText(judged)} after.`;
 }
