@@ -176,13 +176,12 @@ describe.runIf(findChromium() !== null)('the Logbook page of the demo, in a brow
     await page.setViewportSize({ width: 360, height: 740 });
     const wide = await page.evaluate(() => document.documentElement.scrollWidth);
     expect(wide).toBeLessThanOrEqual(360);
-    const unlabelled = await page
-      .locator('.logbook')
-      .evaluate((root) =>
-        [...root.querySelectorAll<HTMLInputElement>('input, select, button')]
-          .filter((field) => !field.labels?.length && !field.textContent?.trim() && !field.ariaLabel)
-          .map((field) => field.outerHTML),
-      );
+    const unlabelled = await page.locator('.logbook').evaluate((root) =>
+      [...root.querySelectorAll<HTMLInputElement>('input, select, button')]
+        .filter((field) => field.checkVisibility())
+        .filter((field) => !field.labels?.length && !field.textContent?.trim() && !field.ariaLabel)
+        .map((field) => field.outerHTML),
+    );
     expect(unlabelled).toEqual([]);
     await page.setViewportSize({ width: 1440, height: 900 });
   });
