@@ -155,10 +155,13 @@ async function startWatch(
   if (!running) await watches.add({ ...asked, model });
 }
 
-/** The demo's models and watches, made at the first start. */
-async function startDemo(server: RunningServer, data: string): Promise<void> {
+/** The demo's models, past and watches, made at the first start. */
+async function startDemo(server: RunningServer, data: string, ingest: string): Promise<void> {
   const { prepareDemo } = await import('./prepareDemo.ts');
-  const { models, watches } = await prepareDemo(data);
+  const { sendDemoPast } = await import('./demoPast.ts');
+  const { models, watches, recordings } = await prepareDemo(data);
+  const unknown = recordings.filter((_, k) => !server.hub.channels.has(watches[k]!.channels[0]!));
+  await sendDemoPast(ingest, unknown, Date.now() / 1000);
   for (const wanted of watches) {
     const model = models.find(({ name }) => name === wanted.model)!;
     await startWatch(server, model.json, wanted);
@@ -224,16 +227,12 @@ async function run(argv: string[]): Promise<number> {
   try {
     if (choice.model)
       await startWatch(server, choice.model.json, { channels: choice.model.channels, reaction: 30 });
-    if (choice.demo) await startDemo(server, choice.data);
     const host = choice.listen === '::1' ? '[::1]' : choice.listen;
     const address = `http://${host}:${server.port}/`;
+    const ingest = `ws://${host}:${server.port}/ingest`;
+    if (choice.demo) await startDemo(server, choice.data, ingest);
     const stopped = untilStopped();
-    if (choice.demo)
-      stand = startStand(
-        `ws://${host}:${server.port}/ingest`,
-        newestStored(server),
-        join(choice.data, 'demo', 'rig.lock'),
-      );
+    if (choice.demo) stand = startStand(ingest, newestStored(server), join(choice.data, 'demo', 'rig.lock'));
     sayWhere(address, server, choice);
     if (choice.browser) openBrowser(address);
     await stopped;
