@@ -1,3 +1,5 @@
+import { countSwings } from './swings.ts';
+
 /** A rule to begin with, and why this one; rule null: none can be defended. */
 export interface Proposal {
   rule: string | null;
@@ -16,6 +18,13 @@ const DEEP = 0.6;
 const LEAST_SHARE = 0.1;
 /** A tail is one-sided when it reaches this many times farther than the other. */
 const ONE_SIDED = 3;
+/** Swinging about either of two sides: a deadband and a fall in shares of half the range, … */
+const DEADBAND = 0.1;
+const FALL = 0.25;
+/** … so many visits at least, with so many swings each on average, whose periods spread by no more than this. */
+const FEWEST_VISITS = 10;
+const SWINGS_A_VISIT = 1.5;
+const REGULAR = 0.5;
 
 /**
  * A rule for a switch as a start, from the distribution of a channel's values; null when none can be defended. It is
@@ -33,8 +42,9 @@ export function proposeRule(times: Float64Array, values: Float64Array): { rule: 
  * As `proposeRule`, with the reason where there is no rule. Two sides: the histogram (64 bins, smoothed), parted where
  * the variance between the parts is greatest, has a hump on either side with at least a tenth of the time each and a
  * valley between them of less than 0.6 of the lower hump. An excursion or a dip: from the median, the 99.9 % quantile
- * reaches at least three times as far as the 0.1 % one, or the other way round. The marks 0.6, a tenth and three are our
- * own.
+ * reaches at least three times as far as the 0.1 % one, or the other way round. Two sides also where the signal swings
+ * on one side several times, at a nearly regular pace, before it goes to the other, as a circulation loop does. The
+ * marks 0.6, a tenth, three and those of the swings are our own.
  *
  * @see Otsu 1979, IEEE Transactions on Systems, Man, and Cybernetics 9, 62 (the parting)
  */
@@ -50,9 +60,10 @@ export function lookForRule(times: Float64Array, values: Float64Array): Proposal
   if (!(quantile(0.999) > quantile(0.001))) return { rule: null, why: 'the channel does not move' };
   return (
     twoSided(sorted, quantile(0.002), quantile(0.998)) ??
-    oneSided(times, values, quantile) ?? {
+    oneSided(times, values, quantile) ??
+    swinging(times, values, quantile(0.01), quantile(0.99)) ?? {
       rule: null,
-      why: 'the values have neither two humps with a deep valley between them nor one long tail; look at the signal and write a rule by hand',
+      why: 'the values have neither two humps with a deep valley between them nor one long tail, nor do they swing on one side for a while; look at the signal and write a rule by hand',
     }
   );
 }
@@ -82,6 +93,21 @@ function twoSided(sorted: Float64Array, low: number, high: number): Proposal | n
   return {
     rule: `sides:${(at(valley) - reach).toFixed(digits)},${(at(valley) + reach).toFixed(digits)}`,
     why: `the values have two humps, near ${at(left).toFixed(digits)} and ${at(right).toFixed(digits)}, with a valley between them of ${(100 * depth).toFixed(0)} % of the lower hump`,
+  };
+}
+
+function swinging(times: Float64Array, values: Float64Array, low: number, high: number): Proposal | null {
+  const [level, half] = [(low + high) / 2, (high - low) / 2];
+  const deadband = DEADBAND * half;
+  const found = countSwings(times, values, { level, deadband, fall: FALL * half });
+  const { visits, swings, period, spread, above } = found;
+  const oneSideOnly = Math.min(above, 1 - above) < LEAST_SHARE;
+  if (visits < FEWEST_VISITS || swings < SWINGS_A_VISIT * visits || oneSideOnly || !(spread <= REGULAR))
+    return null;
+  const digits = digitsFor(high - low);
+  return {
+    rule: `sides:${(level - deadband).toFixed(digits)},${(level + deadband).toFixed(digits)}`,
+    why: `the values swing on one side of ${level.toFixed(digits)} ${(swings / visits).toFixed(1)} times on average, every ${Number(period.toPrecision(2))} s or so, before they go to the other`,
   };
 }
 

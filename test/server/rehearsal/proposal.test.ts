@@ -1,5 +1,6 @@
 import { describe, expect, it } from 'vitest';
 import { lookForRule, proposeRule } from '../../../server/rehearsal/proposal.ts';
+import { createStand, STAND_LOOPS } from '../../../server/rigs/stand.ts';
 import { createRandom } from '../../../server/signal/random.ts';
 import { parseRegimeRule } from '../../../server/watch/regimeRuleText.ts';
 
@@ -44,6 +45,33 @@ describe('the rule proposed from the data', () => {
     const rule = parseRegimeRule(proposeRule(times, spikes(5, true))!.rule);
     expect(rule.kind === 'excursion' && rule.gap > 4 && rule.gap < 52).toBe(true);
   });
+
+  it('is two-sided for a loop that circulates one way for several orbits, though its values have one hump', () => {
+    const [loop] = createStand('proposals', STAND_LOOPS.slice(1)).advance(3600);
+    const { rule, why } = lookForRule(loop!.times, loop!.values);
+    const parsed = parseRegimeRule(rule!);
+    expect(parsed.kind).toBe('sides');
+    if (parsed.kind !== 'sides') return;
+    expect(parsed.low).toBeGreaterThan(-1.5);
+    expect(parsed.low).toBeLessThan(0);
+    expect(parsed.high).toBeGreaterThan(0);
+    expect(parsed.high).toBeLessThan(1.5);
+    // an orbit of this loop takes about 15 s
+    expect(Number(/every (\d+) s/.exec(why)![1])).toBeGreaterThan(11);
+    expect(Number(/every (\d+) s/.exec(why)![1])).toBeLessThan(18);
+  });
+
+  it.each([0.5, 0.9, 0.97, 0.99])(
+    'is none for red noise of coefficient %s: its swings keep no pace',
+    (phi) => {
+      let x = 0;
+      const red = times.map(() => {
+        x = phi * x + gaussian();
+        return x;
+      });
+      expect(proposeRule(times, red)).toBeNull();
+    },
+  );
 
   it.each([
     ['one hump', times.map(() => gaussian())],
