@@ -1,6 +1,7 @@
 import { existsSync, mkdirSync, renameSync, statSync } from 'node:fs';
 import { join } from 'node:path';
 import Database from 'better-sqlite3';
+import { makePruneTables } from './pruneTables.ts';
 import { migrate, SCHEMA_VERSION, schemaVersion } from './schema.ts';
 import { isDamage, StoreError } from './storeError.ts';
 
@@ -9,6 +10,8 @@ export const DATABASE_FILE = 'foreshift.db';
 
 /** Up to this size a database is read through when it is opened, so that damage anywhere shows at once. */
 const READ_THROUGH_BYTES = 32 * 1024 * 1024;
+/** The write-ahead log is cut back to this size once what it held is in the database. */
+const LARGEST_LOG_BYTES = 16 * 1024 * 1024;
 
 /**
  * Opens the folder's database for writing; makes folder and database where there are none. A damaged one is set
@@ -59,9 +62,13 @@ function open(file: string): Database.Database {
   const database = new Database(file);
   try {
     refuseOther(database, file);
+    // only of use before the first table: what is freed can then be given back to the disk in small steps
+    if (schemaVersion(database) === 0) database.pragma('auto_vacuum = INCREMENTAL');
     database.pragma('journal_mode = WAL');
     database.pragma('synchronous = FULL');
+    database.pragma(`journal_size_limit = ${LARGEST_LOG_BYTES}`);
     migrate(database);
+    makePruneTables(database);
     if (statSync(file).size <= READ_THROUGH_BYTES) refuseDamaged(database);
   } catch (fault) {
     database.close();

@@ -5,6 +5,7 @@ import { createGroupCommit } from './groupCommit.ts';
 import { claimFolder } from './lock.ts';
 import { createLogbook } from './logbook.ts';
 import { openDatabase, openDatabaseReader } from './openDatabase.ts';
+import { createPruner } from './pruning.ts';
 import { createReadings, type Readings } from './readings.ts';
 import { createRecords } from './records.ts';
 import { createRuns } from './runs.ts';
@@ -17,6 +18,8 @@ export interface StoreOptions {
   commitEvery: number;
   /** the database stops growing at this many bytes (FULL); left out: at what the disk holds */
   largestBytes?: number;
+  /** the server's clock, Unix seconds, for when samples arrived; left out: the system's */
+  now?: () => number;
 }
 
 /**
@@ -53,17 +56,21 @@ function storeOver(
   const leftOut = createLeftOutRecords(database);
   const rehearsals = createRehearsalRecords(database);
   const readings = createReadings(database);
+  const pruner = createPruner(database);
+  const now = options.now ?? (() => Date.now() / 1000);
   const describe = database.prepare('UPDATE series SET description = ? WHERE id = ?');
   const countHoles = database.prepare('UPDATE series SET holes = holes + ? WHERE id = ?');
   const countGaps = database.prepare('UPDATE series SET gaps = gaps + ? WHERE id = ?');
   const { write, read, close, failures } = createGroupCommit(database, options.commitEvery, {
     flush: () => {
+      pruner.noteArrival(now());
       tails.flush();
       runs.flush();
     },
     forget: () => {
       tails.forget();
       runs.forget();
+      pruner.forget();
     },
   });
 
@@ -134,6 +141,11 @@ function storeOver(
     removeRehearsal: (id) => write(() => rehearsals.removeRehearsal(id)),
     rehearsals: () => read(() => rehearsals.rehearsals()),
     rehearsalResult: (id) => read(() => rehearsals.rehearsalResult(id)),
+    prune: (rules) =>
+      write(() => {
+        tails.flush();
+        return pruner.step(rules, tails.readAnew);
+      }),
     close: async () => {
       await close();
       if (!database.open) return;

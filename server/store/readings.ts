@@ -1,9 +1,10 @@
 import type { Database } from 'better-sqlite3';
 import { ChannelDescription, type Columns } from '../../shared-types/channel.ts';
 import { gatherColumns } from './drawing.ts';
+import { createKeptRanges, type KeptRanges } from './keptRanges.ts';
 import { FAN_OUT } from './pyramid.ts';
 import { createSampleReader, type SampleReader, type Visitor } from './sampleReader.ts';
-import { visibleSpans } from './spans.ts';
+import { type Segment, type Span, visibleSpans } from './spans.ts';
 import type { StoredBlock, StoredChannel, StoredRecording } from './store.ts';
 import type { SeriesKind } from './tails.ts';
 
@@ -22,21 +23,24 @@ const HIGHEST_LEVEL = 7;
 /** Readings of an open database, for the writer (who flushes first) and for readers of other processes alike. */
 export function createReadings(database: Database): Readings {
   const reader = createSampleReader(database);
+  const kept = createKeptRanges(database);
   const channels = database.prepare("SELECT * FROM series WHERE kind = 'channel' ORDER BY id");
   const interval = database
     .prepare("SELECT json_extract(description, '$.interval') FROM series WHERE id = ?")
     .pluck();
   return {
     channels: () => (channels.all() as SeriesRow[]).map(storedChannel),
-    samplesFrom: (channel, ordinal, most) => samplesFrom(reader, channel, ordinal, most),
-    samplesBetween: (channel, from, to) => samplesBetween(reader, channel, from, to),
+    samplesFrom: (channel, ordinal, most) => samplesFrom(reader, kept, channel, ordinal, most),
+    samplesBetween: (channel, from, to) => samplesBetween(reader, kept, channel, from, to),
     columns: (kind, name, from, to, columns) => {
       const series = reader.findSeries(kind, name);
       if (series === null) return emptyColumns();
       return drawn(reader, series, from, to, columns, interval.get(series) as number | null);
     },
     recordings: (gapSeconds) =>
-      (channels.all() as SeriesRow[]).flatMap((row) => recordingsOf(reader, row.id, row.name, gapSeconds)),
+      (channels.all() as SeriesRow[]).flatMap((row) =>
+        recordingsOf(reader, kept, row.id, row.name, gapSeconds),
+      ),
   };
 }
 
@@ -56,35 +60,73 @@ function emptyColumns(): Columns {
   return { t: new Float64Array(0), low: new Float64Array(0), high: new Float64Array(0) };
 }
 
-function emptyBlock(ordinal: number, samples: number): StoredBlock {
-  return { ordinal, times: new Float64Array(samples), values: new Float64Array(samples) };
+/** A part of a segment's samples [from, to), all of them there. */
+interface Range {
+  segment: Segment;
+  from: number;
+  to: number;
 }
 
-function samplesFrom(reader: SampleReader, channel: string, ordinal: number, most: number): StoredBlock {
-  const series = reader.findSeries('channel', channel);
-  const segment =
-    series === null ? undefined : reader.segments(series).find((s) => s.ordinal + s.samples > ordinal);
-  if (segment === undefined) return emptyBlock(ordinal, 0);
-  const from = Math.max(0, ordinal - segment.ordinal);
-  const to = Math.min(segment.samples, from + most);
-  const block = emptyBlock(segment.ordinal + from, to - from);
-  reader.readInto(segment, from, to, block.times, block.values, 0);
-  return block;
-}
-
-function samplesBetween(reader: SampleReader, channel: string, from: number, to: number): StoredBlock {
-  const series = reader.findSeries('channel', channel);
-  const spans = series === null ? [] : visibleSpans(reader.segments(series), from, to);
-  const ranges = spans.map((span) => ({ segment: span.segment, ...reader.rangeOf(span) }));
+function readRanges(reader: SampleReader, ranges: readonly Range[], ordinal: number): StoredBlock {
   const samples = ranges.reduce((sum, range) => sum + range.to - range.from, 0);
-  const start = ranges[0];
-  const block = emptyBlock(start === undefined ? 0 : start.segment.ordinal + start.from, samples);
+  const [start, end] = [ranges[0], ranges.at(-1)];
+  const block = {
+    ordinal: start === undefined ? ordinal : start.segment.ordinal + start.from,
+    next: end === undefined ? ordinal : end.segment.ordinal + end.to,
+    times: new Float64Array(samples),
+    values: new Float64Array(samples),
+  };
   let filled = 0;
-  for (const range of ranges) {
-    reader.readInto(range.segment, range.from, range.to, block.times, block.values, filled);
-    filled += range.to - range.from;
+  for (const { segment, from, to } of ranges) {
+    reader.readInto(segment, from, to, block.times, block.values, filled);
+    filled += to - from;
   }
   return block;
+}
+
+function samplesFrom(
+  reader: SampleReader,
+  kept: KeptRanges,
+  channel: string,
+  ordinal: number,
+  most: number,
+): StoredBlock {
+  const series = reader.findSeries('channel', channel);
+  for (const segment of series === null ? [] : reader.segments(series)) {
+    const { samples } = segment;
+    if (segment.ordinal + samples <= ordinal) continue;
+    let wanted = most;
+    const ranges: Range[] = [];
+    for (const { from, to } of kept.kept(segment, ordinal - segment.ordinal, samples)) {
+      if (wanted <= 0) break;
+      ranges.push({ segment, from, to: Math.min(to, from + wanted) });
+      wanted -= to - from;
+    }
+    if (ranges.length > 0 || most <= 0) return readRanges(reader, ranges, ordinal);
+  }
+  return readRanges(reader, [], ordinal);
+}
+
+function samplesBetween(
+  reader: SampleReader,
+  kept: KeptRanges,
+  channel: string,
+  from: number,
+  to: number,
+): StoredBlock {
+  const series = reader.findSeries('channel', channel);
+  const spans = series === null ? [] : visibleSpans(reader.segments(series), from, to);
+  return readRanges(
+    reader,
+    spans.flatMap((span) => rangesOf(reader, kept, span)),
+    0,
+  );
+}
+
+function rangesOf(reader: SampleReader, kept: KeptRanges, span: Span): Range[] {
+  const { segment } = span;
+  const { from, to } = reader.rangeOf(span);
+  return kept.kept(segment, from, to).map((range) => ({ segment, ...range }));
 }
 
 function drawn(
@@ -110,44 +152,55 @@ function drawn(
   return gatherer.columns(interval);
 }
 
+/** A recording as it is put together; `segment` alone is not told. */
+interface Found extends StoredRecording {
+  segment: Segment;
+}
+
 function recordingsOf(
   reader: SampleReader,
+  kept: KeptRanges,
   series: number,
   channel: string,
   gapSeconds: number,
 ): StoredRecording[] {
-  const found: StoredRecording[] = [];
-  for (const segment of reader.segments(series))
-    for (const [from, to] of cutAtGaps(reader, segment.id, segment.samples, gapSeconds)) {
-      const range = reader.rangeOf({ segment, from, to, fromOpen: false, toOpen: false });
-      found.push({
-        name: `${channel}/${found.length + 1}`,
-        channel,
-        from,
-        to,
-        samples: range.to - range.from,
-        ordinal: segment.ordinal + range.from,
-      });
+  const found: Found[] = [];
+  let number = 0;
+  for (const segment of reader.segments(series)) {
+    let last = Number.NEGATIVE_INFINITY;
+    let open: Found | null = null;
+    const begin = (from: number): Found => ({
+      ...{ name: `${channel}/${number}`, channel, from, to: from, samples: 0, ordinal: 0 },
+      segment,
+    });
+    const visitor: Visitor = {
+      splits: (first, end) => end - first > gapSeconds,
+      missing: () => {},
+      take: (first, end) => {
+        const anew = first - last > gapSeconds;
+        if (anew) number++;
+        if (anew || open === null) found.push((open = begin(first)));
+        open.to = last = end;
+      },
+    };
+    for (const piece of kept.pieces(segment)) {
+      if (!piece.pruned) {
+        reader.walk(segment.id, HIGHEST_LEVEL, piece.from, piece.to, visitor);
+        continue;
+      }
+      // what began in a pruned stretch is not listed, but keeps its number
+      number += piece.recordings;
+      if (piece.recordings > 0) open = null;
+      last = piece.last ?? last;
     }
-  return found;
+  }
+  return found.map((recording) => counted(reader, kept, recording));
 }
 
-function cutAtGaps(
-  reader: SampleReader,
-  segment: number,
-  samples: number,
-  gapSeconds: number,
-): [number, number][] {
-  const stretches: [number, number][] = [];
-  const visitor: Visitor = {
-    splits: (first, last) => last - first > gapSeconds,
-    missing: () => {},
-    take: (first, last) => {
-      const open = stretches.at(-1);
-      if (open === undefined || first - open[1] > gapSeconds) stretches.push([first, last]);
-      else open[1] = last;
-    },
-  };
-  reader.walk(segment, HIGHEST_LEVEL, 0, samples, visitor);
-  return stretches;
+/** With its samples and the ordinal of the first. */
+function counted(reader: SampleReader, kept: KeptRanges, { segment, ...told }: Found): StoredRecording {
+  const { from, to } = told;
+  const ranges = rangesOf(reader, kept, { segment, from, to, fromOpen: false, toOpen: false });
+  const samples = ranges.reduce((sum, range) => sum + range.to - range.from, 0);
+  return { ...told, samples, ordinal: segment.ordinal + (ranges[0]?.from ?? 0) };
 }

@@ -10,7 +10,7 @@ export interface Visitor {
   splits(first: number, last: number): boolean;
   /** a node that was not looked into (`samples` = 32, 1024, …) or one finite sample (`samples` = 1) */
   take(first: number, last: number, low: number, high: number, samples: number): void;
-  /** a sample without a value */
+  /** samples without a value, or pruned ones */
   missing(): void;
 }
 
@@ -18,7 +18,7 @@ export interface Visitor {
 export interface SampleReader {
   findSeries(kind: string, name: string): number | null;
   segments(series: number): Segment[];
-  /** samples [from, to) of a segment, written to times[at …] and values[at …] */
+  /** what is there of samples [from, to) of a segment, written to times[at …] and values[at …] one after another */
   readInto(
     segment: Segment,
     from: number,
@@ -44,7 +44,8 @@ interface BlockRow {
 export function createSampleReader(database: Database): SampleReader {
   const findSeries = database.prepare('SELECT id FROM series WHERE kind = ? AND name = ?').pluck();
   const segments = database.prepare(
-    'SELECT id, ordinal, samples, first, last FROM segments WHERE series = ? AND samples > 0 ORDER BY ordinal, id',
+    `SELECT id, ordinal, samples, first, last, EXISTS (SELECT 1 FROM blocks WHERE segment = segments.id) AS kept
+     FROM segments WHERE series = ? AND samples > 0 ORDER BY ordinal, id`,
   );
   const blocks = database.prepare(
     'SELECT block, samples, times, data FROM blocks WHERE segment = ? AND block BETWEEN ? AND ? ORDER BY block',
@@ -77,8 +78,11 @@ export function createSampleReader(database: Database): SampleReader {
     return scratch;
   };
 
-  const walkSamples = (segment: number, from: number, to: number, visitor: Visitor): void =>
+  const walkSamples = (segment: number, from: number, to: number, visitor: Visitor): void => {
+    let next = Math.floor(from / BLOCK_SAMPLES);
     eachBlock(segment, from, to, (row, a, b) => {
+      if (row.block > next) visitor.missing();
+      next = row.block + 1;
       const times = timesOf(row);
       const values = fromBlob(row.data);
       for (let i = a; i < b; i++) {
@@ -87,6 +91,8 @@ export function createSampleReader(database: Database): SampleReader {
         else visitor.missing();
       }
     });
+    if (next * BLOCK_SAMPLES < to) visitor.missing();
+  };
 
   const walkNodes = (segment: number, level: number, from: number, to: number, visitor: Visitor): void => {
     const size = FAN_OUT ** level;
@@ -95,7 +101,11 @@ export function createSampleReader(database: Database): SampleReader {
       block: number;
       nodes: Uint8Array;
     }[];
+    let next = Math.floor(from / FAN_OUT);
     for (const row of rows) {
+      // rows that are not there were pruned
+      if (row.block > next) visitor.missing();
+      next = row.block + 1;
       const nodes = fromBlob(row.nodes);
       const start = row.block * FAN_OUT;
       const end = Math.min(to - start, nodes.length / NODE_NUMBERS);
@@ -108,6 +118,7 @@ export function createSampleReader(database: Database): SampleReader {
         else visitor.take(first, last, nodes[at + 2]!, nodes[at + 3]!, size);
       }
     }
+    if (next * FAN_OUT < to) visitor.missing();
   };
 
   const walk = (segment: number, level: number, from: number, to: number, visitor: Visitor): void => {

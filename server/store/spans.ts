@@ -6,6 +6,8 @@ export interface Segment {
   samples: number;
   first: number;
   last: number;
+  /** whether any of its samples is still there */
+  kept: 0 | 1;
 }
 
 /** A part of a segment's time range, both ends included. */
@@ -27,6 +29,7 @@ export interface Span {
 export function visibleSpans(segments: readonly Segment[], from: number, to: number): Span[] {
   let seen: Span[] = [];
   for (const segment of segments) {
+    if (segment.kept === 0) continue;
     const cover = { from: Math.max(from, segment.first), to: Math.min(to, segment.last) };
     if (cover.from > cover.to) continue;
     seen = seen.flatMap((span) => around(span, cover.from, cover.to));

@@ -2,6 +2,7 @@ import type { ChannelDescription, Columns } from '../../shared-types/channel.ts'
 import type { Mark, StoredCondition } from '../../shared-types/rehearsal.ts';
 import type { LogEntry, SwitchEvent, Warning } from '../../shared-types/warning.ts';
 import type { LogbookQuery, LogbookRow } from './logbook.ts';
+import type { PruneRules, PruneStep } from './pruneRules.ts';
 
 /** A frame on its way to disk. `times` null: sample i is at t0 + i·dt. */
 export interface FrameToStore {
@@ -22,6 +23,8 @@ export interface FrameToStore {
 /** Samples of one channel as read back. `ordinal` counts the channel's stored samples from 0, in order of arrival. */
 export interface StoredBlock {
   ordinal: number;
+  /** ordinal of the sample after the last; more than `ordinal` and the length together where samples were pruned between */
+  next: number;
   times: Float64Array;
   values: Float64Array;
 }
@@ -82,7 +85,8 @@ export interface StoreReader {
   channels(): Promise<StoredChannel[]>;
   /**
    * samples from `ordinal` on, at most `most` of them, in order of arrival; empty when there are none. Times ascend
-   * within a block: it ends early where time steps back, so only an empty one is the end.
+   * within a block: it ends early where time steps back, so only an empty one is the end; go on from `next`. Pruned
+   * samples are passed over.
    */
   samplesFrom(channel: string, ordinal: number, most: number): Promise<StoredBlock>;
   /** samples with from ≤ t ≤ to, oldest first; where times were recorded twice, what arrived last */
@@ -167,6 +171,9 @@ export interface Store extends StoreReader {
   logEntries(query: { after?: number; most?: number; newest?: boolean }): Promise<LogEntry[]>;
   /** warnings, switches and the log in one order of time, newest first unless said */
   logbook(query: LogbookQuery): Promise<LogbookRow[]>;
+
+  /** one small step of pruning: gives up the oldest samples that the rules let go, and tells what it came to */
+  prune(rules: PruneRules): Promise<PruneStep>;
 
   /** commits what is queued and closes; everything after rejects with CLOSED */
   close(): Promise<void>;

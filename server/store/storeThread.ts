@@ -128,6 +128,7 @@ function remoteStore(call: Call, notices: readonly string[]): Store {
     removeRehearsal: true,
     rehearsals: true,
     rehearsalResult: true,
+    prune: true,
     close: true,
   };
   const remote = Object.fromEntries(

@@ -51,6 +51,8 @@ export interface Tails {
   flush(): void;
   /** forgets what is in memory: after a rollback the database alone is right */
   forget(): void;
+  /** forgets one series, which was written and has changed in the database since */
+  readAnew(series: number): void;
 }
 
 /** Tails over an open, migrated database; the caller holds the transaction. */
@@ -113,6 +115,9 @@ export function createTails(database: Database): Tails {
     forget: () => {
       tails.clear();
       dirty.clear();
+    },
+    readAnew: (series) => {
+      for (const [key, tail] of tails) if (tail.series === series) tails.delete(key);
     },
   };
 }
