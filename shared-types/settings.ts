@@ -1,7 +1,7 @@
 import { z } from 'zod';
 
-/** `settings.json` in the data folder; every key may be left out. */
-export const Settings = z.object({
+/** `settings.json` in the data folder; every key may be left out, and a key that is not one of these is refused. */
+export const Settings = z.strictObject({
   /** frames a producer may have unacknowledged */
   ingestWindow: z.number().int().min(1).max(100_000).default(256),
   /** largest frame accepted, in samples */
@@ -10,5 +10,17 @@ export const Settings = z.object({
   commitEvery: z.number().positive().max(5).default(0.05),
   /** a recording is cut where a channel has nothing for this long, seconds */
   recordingGap: z.number().positive().default(60),
+  /** samples that arrived longer ago than this are given up, seconds, at least an hour; null: none for their age */
+  keepFor: z.number().min(3600).nullable().default(null),
+  /**
+   * the database is held at this size by giving up the oldest samples, bytes, at least 64 MiB; null: it grows. What
+   * surrounds a switch, what models in use were fitted on and what a watch still needs stays in either case.
+   */
+  largestStore: z
+    .number()
+    .int()
+    .min(64 * 1024 * 1024)
+    .nullable()
+    .default(null),
 });
 export type Settings = z.infer<typeof Settings>;

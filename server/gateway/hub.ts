@@ -7,6 +7,7 @@ import type { FrameToStore, Store } from '../store/store.ts';
 import { type Channels, createChannels, type Moment } from './channels.ts';
 import { createIngestSession, type IngestDoors, type IngestSession, type Refusal } from './ingestSession.ts';
 import { createJournal, type Journal } from './journal.ts';
+import { createKeeping } from './keeping.ts';
 import { createLeftOut, type LeftOutRegistry } from './leftOut.ts';
 import { createRecorder, type Recorder } from './recorder.ts';
 import type { Surroundings } from './runningWatch.ts';
@@ -112,6 +113,14 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
     failed: needs.warn,
   });
   await watches.start();
+  const keeping = createKeeping({
+    store,
+    settings,
+    watches,
+    journal,
+    serverTime: () => now().server,
+    warn: needs.warn,
+  });
 
   const take: IngestDoors['take'] = (frame, _arrival, settled) => {
     const gaps = channels.take(frame, now());
@@ -262,8 +271,10 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
         silentNow.set(name, silent);
       }
       attempt(watches.saveProgress());
+      keeping.tick();
     },
     async close() {
+      await keeping.close();
       await recorder.idle();
       await watches.saveProgress();
       await journal.idle();

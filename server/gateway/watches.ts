@@ -85,8 +85,8 @@ async function replay(running: RunningWatch, checkpoint: Checkpoint, store: Stor
   for (;;) {
     for (const source of sources) {
       if (source.block || source.end) continue;
-      const { times, values } = await store.samplesFrom(source.channel, source.ordinal, REPLAY_SAMPLES);
-      source.ordinal += values.length;
+      const { times, values, next } = await store.samplesFrom(source.channel, source.ordinal, REPLAY_SAMPLES);
+      source.ordinal = next;
       if (values.length === 0) source.end = true;
       else source.block = { channel: source.channel, t0: times[0]!, dt: 0, times, values };
     }
