@@ -8,6 +8,8 @@ const HELP = `${programName()}: warns before an intermittently switching experim
   foreshift fit         fit a model to recordings
   foreshift rehearse    run a watch over recordings as if live, and score it
   foreshift play        send a recording as a live stream
+  foreshift backup      copy all that is recorded into one file
+  foreshift restore     put such a file into an empty folder
 
 foreshift COMMAND --help tells more of each, with an example. To see it work: foreshift watch --demo
 An aid to attention, not a safety function: no interlock, no trip, no protection layer.
@@ -20,6 +22,8 @@ const COMMANDS: Record<string, () => Promise<Command>> = {
   fit: async () => (await import('./fit.ts')).fit,
   rehearse: async () => (await import('./rehearse.ts')).rehearse,
   play: async () => (await import('./play.ts')).play,
+  backup: async () => (await import('./backup.ts')).backup,
+  restore: async () => (await import('./restore.ts')).restore,
 };
 
 /**

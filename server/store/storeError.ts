@@ -1,5 +1,13 @@
 /** Stable codes of what can go wrong with the store. */
-export type StoreErrorCode = 'FULL' | 'DAMAGED' | 'CLOSED' | 'FAILED' | 'NEWER' | 'IN_USE' | 'NO_STORE';
+export type StoreErrorCode =
+  | 'FULL'
+  | 'DAMAGED'
+  | 'CLOSED'
+  | 'FAILED'
+  | 'NEWER'
+  | 'IN_USE'
+  | 'NO_STORE'
+  | 'NOT_A_BACKUP';
 
 /** A fault of the store: a stable `code` and a sentence with what was wrong, expected, and to be done. */
 export class StoreError extends Error {
