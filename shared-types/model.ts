@@ -51,7 +51,8 @@ export interface OperatingPoint {
 export interface Diagnostics {
   /** R² of each row of the regression */
   r2: Float64Array;
-  forcing: { kurtosis: number; share: number };
+  /** excess kurtosis, share of time beyond 2, and how often it was where; `counts` is absent in older files */
+  forcing: { kurtosis: number; share: number; counts?: ForcingCounts };
   /** ‖A + Aᵀ‖_F / ‖A‖_F */
   antisymmetryDefect: number;
   eigenvalues: { re: number; im: number }[];
@@ -64,6 +65,13 @@ export interface Diagnostics {
   samples: number;
   windows: number;
   seconds: number;
+}
+
+/** Windows counted by their forcing (standard deviations): bin i from `from` + i·`width`; the outer bins hold all beyond. */
+export interface ForcingCounts {
+  from: number;
+  width: number;
+  counts: number[];
 }
 
 /** Limits beyond which a window does not look like the training data. */
@@ -94,6 +102,26 @@ export interface ModelSummary {
   regime: RegimeRule | null;
   score: Score | null;
   fittedAt: string;
+  usedBy: string[];
+}
+
+/** What a person judges a model by, as `GET /api/models/NAME/evidence` gives it: plain numbers, matrices as rows. */
+export interface ModelEvidence
+  extends Omit<
+    Model,
+    'coordinates' | 'singularValues' | 'spectrum' | 'A' | 'B' | 'diagnostics' | 'operating' | 'validity'
+  > {
+  /** of all singular values, and the floor of Gavish and Donoho below which they are taken for noise */
+  spectrum: number[];
+  noiseFloor: number;
+  A: number[][];
+  B: number[];
+  diagnostics: Omit<Diagnostics, 'r2' | 'heldOut'> & {
+    r2: number[];
+    heldOut: { oneStepR2: number[]; freeRunCorrelation: number } | null;
+  };
+  validity: ValidityLimits | null;
+  operating: OperatingPoint[];
   usedBy: string[];
 }
 

@@ -53,6 +53,26 @@ export function medianThreshold(aspect: number): number {
 }
 
 /**
+ * Noise floor of singular values: ω(β) times their median, but no less than what rounding leaves (1e-8 of the first).
+ *
+ * @param singularValues descending, all of them, zeros included
+ * @param columns        windows
+ * @returns the floor in the unit of the singular values, ω, and whether rounding sets it
+ */
+export function noiseFloor(
+  singularValues: Float64Array,
+  columns: number,
+): { floor: number; omega: number; rounding: boolean } {
+  const rows = singularValues.length;
+  const half = rows >> 1;
+  const median =
+    rows % 2 === 1 ? singularValues[half]! : (singularValues[half - 1]! + singularValues[half]!) / 2;
+  const omega = medianThreshold(Math.min(rows, columns) / Math.max(rows, columns));
+  const least = ROUNDING_FLOOR * singularValues[0]!;
+  return { floor: Math.max(omega * median, least), omega, rounding: omega * median < least };
+}
+
+/**
  * Rank above the noise floor: the number of singular values above ω(β) times their median, at least 2 (one coordinate
  * and the forcing).
  *
@@ -60,16 +80,10 @@ export function medianThreshold(aspect: number): number {
  * @param columns        windows
  */
 export function chooseRank(singularValues: Float64Array, columns: number): RankChoice {
-  const rows = singularValues.length;
-  const half = rows >> 1;
-  const median =
-    rows % 2 === 1 ? singularValues[half]! : (singularValues[half - 1]! + singularValues[half]!) / 2;
-  const omega = medianThreshold(Math.min(rows, columns) / Math.max(rows, columns));
-  const rounding = ROUNDING_FLOOR * singularValues[0]!;
-  const floor = Math.max(omega * median, rounding);
+  const { floor, omega, rounding } = noiseFloor(singularValues, columns);
   let rank = 0;
-  while (rank < rows && singularValues[rank]! > floor) rank++;
-  const limit = omega * median >= rounding ? '' : ', and above 1e-8 of the first, all that rounding leaves';
+  while (rank < singularValues.length && singularValues[rank]! > floor) rank++;
+  const limit = rounding ? ', and above 1e-8 of the first, all that rounding leaves' : '';
   return {
     rank: Math.max(2, rank),
     words:

@@ -3,7 +3,9 @@ import type { IncomingMessage } from 'node:http';
 import { fileURLToPath } from 'node:url';
 import express, { type Request, type Response } from 'express';
 import { z } from 'zod';
+import type { ModelEvidence } from '../../shared-types/model.ts';
 import { NewWatch, WatchAction } from '../../shared-types/watch.ts';
+import { evidenceOf } from '../model/evidence.ts';
 import { answerError, columnsAsked, numberIn, problem, read, sendEither, text } from './httpAnswers.ts';
 import { routeLogbook } from './httpLogbook.ts';
 import { routeMarks } from './httpMarks.ts';
@@ -119,15 +121,17 @@ function routeModels(app: express.Express, hub: Hub): void {
     const name = await hub.watches.addModel(String(request.body ?? ''));
     response.status(201).json({ name });
   });
-  app.get('/api/models/:name', (request, response) => {
-    const json = hub.watches.modelJson(request.params.name);
-    if (json === null)
-      throw new Refused(
-        404,
-        'NO_SUCH_MODEL',
-        `there is no model "${request.params.name}"; GET /api/models lists them`,
-      );
-    response.type('application/json').send(json);
+  const known = <T>(name: string, found: T | null): T => {
+    if (found !== null) return found;
+    throw new Refused(404, 'NO_SUCH_MODEL', `there is no model "${name}"; GET /api/models lists them`);
+  };
+  app.get('/api/models/:name', ({ params: { name } }, response) => {
+    response.type('application/json').send(known(name, hub.watches.modelJson(name)));
+  });
+  app.get('/api/models/:name/evidence', ({ params: { name } }, response) => {
+    const evidence = evidenceOf(known(name, hub.watches.model(name)));
+    const usedBy = hub.watches.models().find((model) => model.name === name)?.usedBy ?? [];
+    response.json({ ...evidence, name, usedBy } satisfies ModelEvidence);
   });
 }
 

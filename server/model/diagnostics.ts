@@ -1,5 +1,5 @@
 import { EigenvalueDecomposition, Matrix } from 'ml-matrix';
-import type { Diagnostics, ValidityLimits } from '../../shared-types/model.ts';
+import type { Diagnostics, ForcingCounts, ValidityLimits } from '../../shared-types/model.ts';
 import { BLOCK, type Coordinates, walkCoordinates } from './coordinateBlocks.ts';
 import { freeRunCorrelation } from './freeRun.ts';
 import { addSums, createNormalSums, type NormalSums, rSquared, solveLeastSquares } from './leastSquares.ts';
@@ -10,6 +10,10 @@ import { type Validity, validityInto, validityLimits } from './validity.ts';
 const HEAD = 0.8;
 /** Windows looked at for the quantiles of SPE and T²; a longer record is read at every second, third … window. */
 const MOST_WINDOWS = 100_000;
+
+/** Bins of the forcing's histogram: a quarter of a standard deviation wide, from −6 to 6. */
+const BIN = 0.25;
+const BINS = 48;
 
 /** A and B and how well they fit. */
 export interface Regression {
@@ -75,7 +79,7 @@ function partsOf(coefficients: Float64Array, rank: number): { A: Float64Array; B
 /** What one walk through the training windows says of the forcing and of the limits. */
 export interface Spread {
   /** excess kurtosis of the last coordinate, and the share of windows where it is beyond 2 (its rms is 1) */
-  forcing: { kurtosis: number; share: number };
+  forcing: { kurtosis: number; share: number; counts: ForcingCounts };
   validity: ValidityLimits;
 }
 
@@ -98,6 +102,7 @@ export function measureSpread(
   const blockSpe = new Float64Array(BLOCK);
   const blockT2 = new Float64Array(BLOCK);
   const powers = [0, 0, 0, 0];
+  const counts = new Array<number>(BINS).fill(0);
   let beyond = 0;
   walkCoordinates(runs, of, (block) => {
     validityInto(validity, block.lines, delays - 1, block.count, block.values, blockSpe, blockT2);
@@ -109,6 +114,7 @@ export function measureSpread(
       powers[2]! += square * v;
       powers[3]! += square * square;
       if (square > 4) beyond++;
+      counts[Math.max(0, Math.min(BINS - 1, Math.floor(v / BIN + BINS / 2)))]!++;
       const ordinal = block.ordinal + i;
       if (ordinal % stride !== 0) continue;
       spe[ordinal / stride] = blockSpe[i]!;
@@ -119,7 +125,11 @@ export function measureSpread(
   const variance = m2 - m1 * m1;
   const fourth = m4 - 4 * m1 * m3 + 6 * m1 * m1 * m2 - 3 * m1 ** 4;
   return {
-    forcing: { kurtosis: fourth / (variance * variance) - 3, share: beyond / windows },
+    forcing: {
+      kurtosis: fourth / (variance * variance) - 3,
+      share: beyond / windows,
+      counts: { from: (-BINS / 2) * BIN, width: BIN, counts },
+    },
     validity: validityLimits(left, validity, windows, spe, t2),
   };
 }

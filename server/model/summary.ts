@@ -41,7 +41,8 @@ export function summarise(model: Model): { [key: string]: unknown } {
   };
 }
 
-function rowsOf(matrix: Float64Array, columns: number): number[][] {
+/** A row-major matrix as an array of rows. */
+export function rowsOf(matrix: Float64Array, columns: number): number[][] {
   return Array.from({ length: matrix.length / columns }, (_, row) => [
     ...matrix.subarray(row * columns, (row + 1) * columns),
   ]);

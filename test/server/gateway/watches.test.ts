@@ -1,5 +1,6 @@
 import { describe, expect, it } from 'vitest';
 import { modelFromJson, modelToJson } from '../../../server/model/modelFile.ts';
+import type { ModelEvidence } from '../../../shared-types/model.ts';
 import type { LogEntry, Warning } from '../../../shared-types/warning.ts';
 import type { WatchState } from '../../../shared-types/watch.ts';
 import { temporaryFolder } from '../store/temporaryFolder.ts';
@@ -51,6 +52,14 @@ async function watched(folder = temporaryFolder()) {
 }
 
 describe('a watch on a channel', () => {
+  it('has a model whose evidence can be asked for, with who uses it', async () => {
+    const { port, watch } = await watched();
+    const { json } = await api<ModelEvidence>(port, '/api/models/swing/evidence');
+    expect(json).toMatchObject({ name: 'swing', usedBy: [watch], rule: { variable: 'level' } });
+    expect(json.spectrum[0]).toBeGreaterThan(json.noiseFloor);
+    expect((await api(port, '/api/models/none/evidence')).status).toBe(404);
+  });
+
   it('is blind, then sees, warns, and is normal again when its warning is acknowledged and over', async () => {
     const { line, state, act, warnings, watch } = await watched();
     expect(await state()).toMatchObject({ watch, sight: { kind: 'blind' }, state: 'normal', trigger: false });
