@@ -110,7 +110,10 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
     touch: (watch) => touched$.next(`watch ${watch}`),
     traced: (watch, times, values) => traces$.next({ watch, times, values }),
     flushFrames: recorder.flush,
-    failed: needs.warn,
+    failed: (text) => {
+      needs.warn(text);
+      journal.log({ kind: 'server', channel: null, watch: null, by: null, text });
+    },
   });
   await watches.start();
   const keeping = createKeeping({
@@ -271,6 +274,7 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
         silentNow.set(name, silent);
       }
       attempt(watches.saveProgress());
+      journal.retry();
       keeping.tick();
     },
     async close() {
