@@ -1,4 +1,5 @@
 import { mountLogbook } from './logbook/page.ts';
+import { mountModels } from './models/page.ts';
 import { mountRehearse } from './rehearse/page.ts';
 
 /** A page beside Watch. */
@@ -23,6 +24,7 @@ export interface Visited {
 export const PAGES: readonly Page[] = [
   { name: 'Watch', path: '#/', mount: null },
   { name: 'Rehearse', path: '#/rehearse', mount: mountRehearse },
+  { name: 'Models', path: '#/models', mount: mountModels },
   { name: 'Logbook', path: '#/logbook', mount: mountLogbook },
 ];
 

@@ -1,7 +1,7 @@
 import type { LogbookPage } from '../shared-types/logbook.ts';
 import type { ModelSummary } from '../shared-types/model.ts';
 import type { SwitchEvent, Warning } from '../shared-types/warning.ts';
-import type { NewWatch, WatchAction } from '../shared-types/watch.ts';
+import type { NewWatchToSend, WatchAction } from '../shared-types/watch.ts';
 import type { FetchedColumns } from './columns.ts';
 
 /** An action as the page sends it; the server fills what is left out. */
@@ -17,7 +17,7 @@ export async function act(watch: string, action: ActionToSend): Promise<void> {
 }
 
 /** Puts a model on channels. @throws Error with the server's own sentence */
-export async function startWatch(watch: Omit<NewWatch, 'reaction'>): Promise<void> {
+export async function startWatch(watch: NewWatchToSend): Promise<void> {
   await send('/api/watches', watch);
 }
 

@@ -99,8 +99,12 @@ export const NewWatch = z.object({
   channels: z.array(ChannelName).min(1),
   /** below this least lead (seconds) nobody is asked to acknowledge; see "trigger" */
   reaction: z.number().nonnegative().default(30),
+  /** on trial it runs beside the one in use, unseen by the operator, graded alike */
+  use: z.enum(['in use', 'on trial']).default('in use'),
 });
 export type NewWatch = z.infer<typeof NewWatch>;
+/** as it is sent: what has a default may be left out */
+export type NewWatchToSend = z.input<typeof NewWatch>;
 
 /** Whether a watch sees: `blind` until its delay window is full. */
 export type Sight =

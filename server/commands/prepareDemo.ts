@@ -2,7 +2,7 @@ import { createHash } from 'node:crypto';
 import { mkdir, readFile, writeFile } from 'node:fs/promises';
 import { join } from 'node:path';
 import type { Model } from '../../shared-types/model.ts';
-import type { NewWatch } from '../../shared-types/watch.ts';
+import type { NewWatchToSend } from '../../shared-types/watch.ts';
 import { modelFromJson, modelToJson } from '../model/modelFile.ts';
 import { writeCsv } from '../recordings/csv.ts';
 import type { RecordedSeries } from '../rehearsal/playback.ts';
@@ -32,7 +32,7 @@ const SIDE_KELVIN = 0.3;
 export interface PreparedDemo {
   /** one a loop, to be saved under `name` */
   models: { name: string; json: string; model: Model; file: string }[];
-  watches: NewWatch[];
+  watches: NewWatchToSend[];
   /** the training recordings, to look at and to fit again */
   recordings: string[];
 }

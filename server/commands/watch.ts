@@ -4,7 +4,7 @@ import { join } from 'node:path';
 import { fileURLToPath } from 'node:url';
 import { parseArgs } from 'node:util';
 import { Settings } from '../../shared-types/settings.ts';
-import type { NewWatch } from '../../shared-types/watch.ts';
+import type { NewWatchToSend } from '../../shared-types/watch.ts';
 import { complaint } from '../gateway/ingestFrame.ts';
 import { type RunningServer, startServer } from '../gateway/server.ts';
 import { modelFromJson } from '../model/modelFile.ts';
@@ -141,7 +141,7 @@ function startStand(ingest: string, after: number, lock: string): ChildProcess {
 async function startWatch(
   server: RunningServer,
   json: string,
-  asked: Omit<NewWatch, 'model'>,
+  asked: Omit<NewWatchToSend, 'model'>,
 ): Promise<void> {
   const { watches } = server.hub;
   const model = await watches.addModel(json);
@@ -225,8 +225,7 @@ async function run(argv: string[]): Promise<number> {
   const server = await start(choice);
   let stand: ChildProcess | null = null;
   try {
-    if (choice.model)
-      await startWatch(server, choice.model.json, { channels: choice.model.channels, reaction: 30 });
+    if (choice.model) await startWatch(server, choice.model.json, { channels: choice.model.channels });
     const host = choice.listen === '::1' ? '[::1]' : choice.listen;
     const address = `http://${host}:${server.port}/`;
     const ingest = `ws://${host}:${server.port}/ingest`;

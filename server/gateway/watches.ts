@@ -1,5 +1,10 @@
 import type { Model, ModelSummary } from '../../shared-types/model.ts';
-import type { NewWatch, WatchAction, WatchState } from '../../shared-types/watch.ts';
+import {
+  NewWatch,
+  type NewWatchToSend,
+  type WatchAction,
+  type WatchState,
+} from '../../shared-types/watch.ts';
 import type { Store, StoredWatch } from '../store/store.ts';
 import type { Frame } from '../watch/types.ts';
 import { NO_ALARM } from './alarmState.ts';
@@ -37,9 +42,9 @@ export interface Watches {
   start(): Promise<void>;
   push(frame: Frame): void;
   tick(): void;
-  add(wanted: NewWatch): Promise<WatchState>;
+  add(asked: NewWatchToSend): Promise<WatchState>;
   /** a watch in the place of those in use on the same channels, with their time of reaction */
-  replace(wanted: Omit<NewWatch, 'reaction'>): Promise<WatchState>;
+  replace(wanted: NewWatchToSend): Promise<WatchState>;
   /** stores a model under its name, or under a free one when that name has another content; returns the name */
   addModel(json: string): Promise<string>;
   act(watch: string, action: WatchAction): WatchState;
@@ -153,7 +158,8 @@ export function createWatches(needs: WatchesNeeds): Watches {
       .map(({ memo }) => memo.watch),
   });
 
-  const add = async (wanted: NewWatch): Promise<WatchState> => {
+  const add = async (asked: NewWatchToSend): Promise<WatchState> => {
+    const wanted = NewWatch.parse(asked);
     const entry = models.get(wanted.model);
     if (!entry)
       throw new Refused(
@@ -175,7 +181,7 @@ export function createWatches(needs: WatchesNeeds): Watches {
       model: wanted.model,
       channels: wanted.channels,
       reaction: wanted.reaction,
-      use: 'in use',
+      use: wanted.use,
       alarm: NO_ALARM,
       gradeSince: null,
     };
@@ -197,7 +203,7 @@ export function createWatches(needs: WatchesNeeds): Watches {
       channel: memo.channels[0]!,
       watch: memo.watch,
       by: null,
-      text: `"${name}" begins`,
+      text: `"${name}" begins${wanted.use === 'on trial' ? ' on trial' : ''}`,
     });
     needs.touch(memo.watch);
     return watch.state();
@@ -245,7 +251,7 @@ export function createWatches(needs: WatchesNeeds): Watches {
       const before = [...running.values()].filter(
         ({ memo }) => memo.use === 'in use' && memo.channels.join('\n') === wanted.channels.join('\n'),
       );
-      const state = await add({ ...wanted, reaction: before[0]?.memo.reaction ?? 30 });
+      const state = await add({ ...wanted, reaction: before[0]?.memo.reaction ?? 30, use: 'in use' });
       for (const old of before) old.setUse('taken out of use', `"${state.name}" takes over`);
       return state;
     },
