@@ -24,7 +24,7 @@ export function matrixTable(A: readonly (readonly number[])[], B: readonly numbe
       cell.tabIndex = i === 0 && k === 0 ? 0 : -1;
       cell.style.setProperty('--ink-share', `${Math.round(100 * inkOf(value, largest))}%`);
       mark(cell, 'data-negative', value < 0 ? 'yes' : null);
-      mark(cell, 'data-dark', inkOf(value, largest) > 0.55 ? 'yes' : null);
+      mark(cell, 'data-dark', !few && inkOf(value, largest) > 0.55 ? 'yes' : null);
       mark(cell, 'data-forcing', forcing ? 'yes' : null);
       const words = `dv${sub(i + 1)}/dt: ${number(value)} per second times ${forcing ? 'the forcing' : `v${sub(k + 1)}`}`;
       mark(cell, 'aria-label', words);
@@ -72,6 +72,7 @@ export function matrixTable(A: readonly (readonly number[])[], B: readonly numbe
       ...cells.map((row, i) => element('tr', '', head(`dv${sub(i + 1)}/dt`, 'row'), ...row)),
     ),
   );
+  mark(table, 'data-few', few ? 'yes' : null);
   table.addEventListener('pointerleave', () => say(reading, usual));
   table.addEventListener('focusout', () => say(reading, usual));
   return element('div', '', element('div', 'tableScroll', table), reading);

@@ -104,6 +104,9 @@ function heldOut({ diagnostics }: ModelEvidence, window: number): HTMLElement {
   );
 }
 
+const shareOf = (share: number): string =>
+  share === 0 ? 'no training window' : `${Number((100 * share).toPrecision(2))} % of the training windows`;
+
 function provenance({ provenance: from, diagnostics, validity }: ModelEvidence, today: number): HTMLElement {
   const recordings = from.recordings.map(({ name, from: begin, to, samples, sha256 }) =>
     element(
@@ -118,7 +121,7 @@ function provenance({ provenance: from, diagnostics, validity }: ModelEvidence, 
     `Window: ${diagnostics.windowChoice}. Rank: ${diagnostics.rankChoice}.`,
     validity === null
       ? 'It carries no limits of likeness.'
-      : `Data are taken for unlike the model beyond limits that ${numberText(100 * validity.beyond, 1)} % of the training windows pass.`,
+      : `Data are taken for unlike the model beyond limits that ${shareOf(validity.beyond)} passed.`,
   ];
   return element(
     'div',
