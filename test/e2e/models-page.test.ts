@@ -69,7 +69,7 @@ describe.skipIf(findChromium() === null)('the Models page of the demo, in a brow
     await expect.poll(async () => (await watches()).length).toBe(before + 1);
     const trial = (await watches()).find(({ use }) => use === 'on trial')!;
     expect(trial.state).toBe('normal');
-    const line = page.locator('.use', { hasText: 'on trial' });
+    const line = page.locator('.use', { hasText: ', trial”' });
     await line.getByRole('button', { name: 'Take out of use' }).click();
     await expect
       .poll(async () => (await watches()).find(({ watch }) => watch === trial.watch)?.use)
