@@ -7,6 +7,8 @@ export interface Unwritten {
   flush(): void;
   /** drops all of it: the database alone is right */
   forget(): void;
+  /** the database was found damaged */
+  damaged(): void;
 }
 
 /** Collects calls into transactions. */
@@ -46,8 +48,14 @@ export function createGroupCommit(
   const begin = database.prepare('BEGIN IMMEDIATE');
   const end = database.prepare('COMMIT');
 
-  const fail = (fault: unknown): StoreError => {
+  const understood = (fault: unknown): StoreError => {
     const error = asStoreError(fault);
+    if (error.code === 'DAMAGED') unwritten.damaged();
+    return error;
+  };
+
+  const fail = (fault: unknown): StoreError => {
+    const error = understood(fault);
     unwritten.forget();
     if (database.inTransaction) database.exec('ROLLBACK');
     if (timer !== null) clearTimeout(timer);
@@ -107,7 +115,7 @@ export function createGroupCommit(
       try {
         return question();
       } catch (fault) {
-        throw asStoreError(fault);
+        throw understood(fault);
       }
     },
     close: async () => {

@@ -1,4 +1,4 @@
-import { existsSync, mkdirSync, renameSync, statSync } from 'node:fs';
+import { existsSync, mkdirSync, renameSync, rmSync, statSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
 import Database from 'better-sqlite3';
 import { makePruneTables } from './pruneTables.ts';
@@ -10,6 +10,8 @@ export const DATABASE_FILE = 'foreshift.db';
 
 /** Up to this size a database is read through when it is opened, so that damage anywhere shows at once. */
 const READ_THROUGH_BYTES = 32 * 1024 * 1024;
+/** No database has a version beyond this: the number is spoilt. */
+const HIGHEST_VERSION = 10_000;
 /** The write-ahead log is cut back to this size once what it held is in the database. */
 const LARGEST_LOG_BYTES = 16 * 1024 * 1024;
 
@@ -34,6 +36,17 @@ export function openDatabase(dataFolder: string, notices: string[]): Database.Da
     return open(file);
   }
 }
+
+/** Leaves word beside a database that it was found damaged, so that the next start reads all of it. */
+export function noteDamage(dataFolder: string): void {
+  try {
+    writeFileSync(damageNote(join(dataFolder, DATABASE_FILE)), '');
+  } catch {
+    // a disk that takes nothing more: the next start will meet the damage as this one did
+  }
+}
+
+const damageNote = (file: string) => `${file}-damaged`;
 
 /**
  * Opens the folder's database for reading only, also while a server writes to it.
@@ -67,9 +80,9 @@ function open(file: string): Database.Database {
     database.pragma('journal_mode = WAL');
     database.pragma('synchronous = FULL');
     database.pragma(`journal_size_limit = ${LARGEST_LOG_BYTES}`);
-    migrate(database);
-    makePruneTables(database);
-    if (statSync(file).size <= READ_THROUGH_BYTES) refuseDamaged(database);
+    bringForward(database);
+    if (statSync(file).size <= READ_THROUGH_BYTES || existsSync(damageNote(file))) refuseDamaged(database);
+    rmSync(damageNote(file), { force: true });
   } catch (fault) {
     database.close();
     throw fault;
@@ -77,8 +90,20 @@ function open(file: string): Database.Database {
   return database;
 }
 
+function bringForward(database: Database.Database): void {
+  try {
+    migrate(database);
+    makePruneTables(database);
+  } catch (fault) {
+    // its tables are not those that its version has
+    if ((fault as { code?: unknown }).code !== 'SQLITE_ERROR') throw fault;
+    throw damage((fault as Error).message);
+  }
+}
+
 function refuseOther(database: Database.Database, file: string): void {
   const version = schemaVersion(database);
+  if (version < 0 || version > HIGHEST_VERSION) throw damage(`its version is ${version}`);
   if (version > SCHEMA_VERSION)
     throw new StoreError(
       'NEWER',
@@ -89,7 +114,7 @@ function refuseOther(database: Database.Database, file: string): void {
 
 function refuseDamaged(database: Database.Database): void {
   const found = database.pragma('quick_check(1)', { simple: true });
-  if (found !== 'ok') throw Object.assign(new Error(String(found)), { code: 'SQLITE_CORRUPT' });
+  if (found !== 'ok') throw damage(inOneLine(String(found)));
 }
 
 function setAside(file: string): string {
@@ -98,3 +123,8 @@ function setAside(file: string): string {
   for (const end of ['', '-wal', '-shm']) if (existsSync(file + end)) renameSync(file + end, aside + end);
   return aside;
 }
+
+/** SQLite heads a finding with a line of its own. */
+const inOneLine = (found: string) => found.replace(/^\*\*\*.*\*\*\*\n/, '').replaceAll('\n', '; ');
+
+const damage = (found: string) => Object.assign(new Error(found), { code: 'SQLITE_CORRUPT' });

@@ -4,7 +4,7 @@ import { createLeftOutRecords, createRehearsalRecords, readLeftOut } from './ann
 import { createGroupCommit } from './groupCommit.ts';
 import { claimFolder } from './lock.ts';
 import { createLogbook } from './logbook.ts';
-import { openDatabase, openDatabaseReader } from './openDatabase.ts';
+import { noteDamage, openDatabase, openDatabaseReader } from './openDatabase.ts';
 import { createPruner } from './pruning.ts';
 import { createReadings, type Readings } from './readings.ts';
 import { createRecords } from './records.ts';
@@ -32,7 +32,9 @@ export function openStore(dataFolder: string, options: StoreOptions): Store & { 
   const release = claimFolder(dataFolder);
   const notices: string[] = [];
   try {
-    return storeOver(openDatabase(dataFolder, notices), options, notices, release);
+    return storeOver(openDatabase(dataFolder, notices), options, notices, release, () =>
+      noteDamage(dataFolder),
+    );
   } catch (fault) {
     release();
     throw fault;
@@ -44,6 +46,7 @@ function storeOver(
   options: StoreOptions,
   notices: string[],
   release: () => void,
+  damaged: () => void,
 ): Store & { failures(): number } {
   if (options.largestBytes !== undefined) {
     const page = database.pragma('page_size', { simple: true }) as number;
@@ -72,6 +75,7 @@ function storeOver(
       runs.forget();
       pruner.forget();
     },
+    damaged,
   });
 
   // what the store refuses is refused before anything of the call is applied

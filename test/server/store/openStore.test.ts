@@ -167,6 +167,29 @@ test.each([
   await fresh.close();
 });
 
+test('damage in a database too large to be read through is noted when it is met; the next start sets it aside', async () => {
+  const folder = temporaryFolder();
+  const store = openStore(folder, options);
+  for (let seq = 0; seq < 45; seq++)
+    await store.appendFrames([frame(seq, seq * 1000, new Float64Array(100_000))]);
+  await store.close();
+  const file = join(folder, 'foreshift.db');
+  const bytes = readFileSync(file);
+  expect(bytes.length).toBeGreaterThan(33e6);
+  writeFileSync(file, bytes.fill(0xa5, 20e6, 21e6));
+  const again = openStore(folder, options);
+  expect(again.notices).toEqual([]);
+  await expect(again.samplesBetween('A', 0, 1e9)).rejects.toMatchObject({ code: 'DAMAGED' });
+  await again.close();
+  const fresh = openStore(folder, options);
+  expect(fresh.notices).toHaveLength(1);
+  expect(await fresh.channels()).toEqual([]);
+  await fresh.close();
+  const third = openStore(folder, options);
+  expect(third.notices).toEqual([]);
+  await third.close();
+});
+
 test('a full disk rejects with FULL, leaves nothing half-written, and a later append succeeds once there is room', async () => {
   const folder = temporaryFolder();
   const ballast = new Database(join(folder, 'foreshift.db'));
