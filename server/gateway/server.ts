@@ -43,6 +43,8 @@ export interface RunningServer {
 /** Larger messages end the connection with 1009; frames are refused in words long before. */
 const LARGEST_MESSAGE_BYTES = 64 * 1024 * 1024;
 const LARGEST_REQUEST_BYTES = 64 * 1024;
+/** A producer that reads none of its replies is hung up on; it may come again and hears where it stands. */
+const UNREAD_REPLIES_BYTES = 1_000_000;
 const GOING_AWAY = 1001;
 const GOODBYE_MILLISECONDS = 1000;
 /** a connection that answers no ping for this long is dead */
@@ -61,7 +63,9 @@ function serveProducers(hub: Hub, sockets: WebSocketServer): void {
   sockets.on('connection', (socket: WebSocket) => {
     const session = hub.producer(
       (reply) => {
-        if (socket.readyState === socket.OPEN) socket.send(JSON.stringify(reply));
+        if (socket.readyState !== socket.OPEN) return;
+        socket.send(JSON.stringify(reply));
+        if (socket.bufferedAmount > UNREAD_REPLIES_BYTES) socket.terminate();
       },
       (code, reason) => socket.close(code, reason),
     );
