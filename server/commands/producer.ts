@@ -126,7 +126,8 @@ export function createProducer(options: ProducerOptions): Producer {
   };
 
   const dropOldest = () => {
-    const oldest = queue.find((frame) => !frame.settled);
+    // one under way counts in the server's window until it is acknowledged
+    const oldest = queue.find((frame) => !frame.settled && !frame.sent);
     if (!oldest) return;
     settle(oldest);
     const frames = kept.get(oldest.channel)!;
@@ -166,6 +167,8 @@ export function createProducer(options: ProducerOptions): Producer {
     } else {
       const { error, code, channel = null, seq = null } = reply;
       say({ kind: 'refused', error, code, channel, seq });
+      // it was not consumed: connecting anew tells where to go on
+      if (code === 'TOO_MANY_UNACKNOWLEDGED') socket?.terminate();
     }
     pump();
   };

@@ -45,8 +45,10 @@ function neverKilled(frames: number): Happening[] {
 /** Sends to all channels until it is told to stop; how many frames each has sent. */
 function stream(port: number) {
   const to = `ws://127.0.0.1:${port}/ingest`;
-  const watched = createProducer({ to, run: 'the only run', channels: [{ channel: 'c', interval: 0.1 }] });
-  const load = createProducer({ to, run: 'load', channels: LOAD.map((channel) => ({ channel })) });
+  const limit = 1_000_000;
+  const channels = [{ channel: 'c', interval: 0.1 }];
+  const watched = createProducer({ to, run: 'the only run', channels, limit });
+  const load = createProducer({ to, run: 'load', channels: LOAD.map((channel) => ({ channel })), limit });
   let frames = 0;
   const timer = setInterval(() => {
     watched.send('c', { t0: 0.1 * FRAME * frames, dt: 0.1, values: swing(FRAME * frames, FRAME) });
@@ -69,11 +71,12 @@ function stream(port: number) {
 async function killAgainAndAgain(killed: BuiltServer): Promise<number> {
   const random = chance(SEED);
   let [blind, sawBefore] = [0, false];
-  const taken = async () => (await api<ChannelState[]>(killed.port, '/api/channels')).json[0]?.samples ?? 0;
+  const taken = async () =>
+    (await api<ChannelState[]>(killed.port, '/api/channels')).json.map(({ samples }) => samples);
   for (let kill = 0; kill < KILLS; kill++) {
-    // the producer is back and sends: every kill meets frames under way
+    // the producers are back and send: every kill meets frames under way
     const before = await taken();
-    await until(async () => (await taken()) > before);
+    await until(async () => (await taken()).every((samples, i) => samples > (before[i] ?? 0)));
     await sleep(500 * random() ** 2);
     await killed.stop('SIGKILL');
     if (random() < 0.2 && ++kill < KILLS) {
