@@ -44,6 +44,7 @@ export type IngestErrorCode =
   | 'BAD_HELLO'
   | 'NO_SEQ'
   | 'OTHER_CONTENT'
+  | 'TOO_LATE'
   | 'BAD_TIMES'
   | 'TIME_BACKWARDS'
   | 'BAD_VALUES'

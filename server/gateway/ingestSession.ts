@@ -70,7 +70,7 @@ function toStore(frame: DecodedFrame, run: string, seq: number, t0: number): Fra
  * One producer's connection as a state machine without a socket: messages in, replies out, time as an argument.
  *
  * With hello: runs resume where the store has them; a frame sent again is ignored and acknowledged, other content
- * under a known number is an error, a skipped number is a recorded hole, an unusable frame is answered in words,
+ * under a known number is an error, a skipped number is a recorded hole and refused when it comes after all, an unusable frame is answered in words,
  * counts as consumed and harms no other; acknowledgements are cumulative and come once frames are durable. A frame that
  * cannot be written is told and ends the session with 1013: what was not acknowledged is to be sent again. A frame
  * beyond the window is not consumed: it is refused in words, and so is what follows, until it is sent again; a
@@ -128,6 +128,14 @@ export function createIngestSession(doors: IngestDoors, limits: IngestLimits): I
       return refuse(
         'OTHER_CONTENT',
         `frame ${seq} came before with other content; number each frame once`,
+        channel,
+        seq,
+      );
+    const [oldest = Number.POSITIVE_INFINITY] = run.digests.keys();
+    if (known === undefined && seq > oldest)
+      return refuse(
+        'TOO_LATE',
+        `frame ${seq} comes after frame ${run.next - 1} and is a hole already; send the frames of a run in order`,
         channel,
         seq,
       );
