@@ -10,6 +10,7 @@ const HELP = `${programName()}: warns before an intermittently switching experim
   foreshift play        send a recording as a live stream
   foreshift backup      copy all that is recorded into one file
   foreshift restore     put such a file into an empty folder
+  foreshift token       say who may do what on a server that other machines can reach
 
 foreshift COMMAND --help tells more of each, with an example. To see it work: foreshift watch --demo
 An aid to attention, not a safety function: no interlock, no trip, no protection layer.
@@ -24,6 +25,7 @@ const COMMANDS: Record<string, () => Promise<Command>> = {
   play: async () => (await import('./play.ts')).play,
   backup: async () => (await import('./backup.ts')).backup,
   restore: async () => (await import('./restore.ts')).restore,
+  token: async () => (await import('./token.ts')).token,
 };
 
 /**
