@@ -58,6 +58,11 @@ export function createProgress(stop: (id: string) => void): Progress {
   };
 }
 
+function endWords({ state, verdict }: RehearsalState): string {
+  if (state !== 'done' || verdict === null) return state;
+  return verdict.than === null ? verdict.kind : `${verdict.kind} ${verdict.than}`;
+}
+
 function asSentence(text: string): string {
   return /[.!?]$/.test(text) ? text : `${text}.`;
 }
@@ -80,8 +85,7 @@ export function createEarlier(): {
           const link = element('a', '', requestText(state.request));
           link.href = `#/rehearse/${encodeURIComponent(state.id)}`;
           if (state.id === here) mark(link, 'aria-current', 'true');
-          const what = state.state === 'done' ? (state.verdict?.kind ?? 'done') : state.state;
-          return element('li', '', element('b', '', capital(what)), ' ', link);
+          return element('li', '', element('b', '', capital(endWords(state))), ' ', link);
         }),
       );
     },
