@@ -2,7 +2,8 @@ import type { Settings } from '../../shared-types/settings.ts';
 import type { PruneRules, PruneStep, SwitchPin } from '../store/pruneRules.ts';
 import type { Store, StoredWatch } from '../store/store.ts';
 import type { Journal } from './journal.ts';
-import { readCheckpoint, type WatchMemo } from './runningWatch.ts';
+import type { WatchMemo } from './runningWatch.ts';
+import { checkpointOf, memoOf } from './storedWatch.ts';
 import type { Watches } from './watches.ts';
 
 /** Prunes what the settings let go, in the background. */
@@ -118,7 +119,9 @@ async function rulesOf({ store, settings, watches }: KeepingNeeds): Promise<Omit
     needed: [],
   };
   for (const stored of await store.watches()) {
-    const memo = JSON.parse(stored.settings) as WatchMemo;
+    const memo = readable(() => memoOf(stored));
+    // what cannot be read does not run either, and was said at the start
+    if (memo === null) continue;
     const model = watches.model(memo.model);
     if (model !== null) rules.switches.push(pinOf(memo, model));
     if (memo.use === 'taken out of use') continue;
@@ -145,13 +148,17 @@ function pinOf({ watch, channels }: WatchMemo, model: Ruled): SwitchPin {
   };
 }
 
-/** A watch that has no snapshot yet begins with the first sample; one whose snapshot cannot be read does not run. */
-function neededBy({ snapshot }: StoredWatch, { channels }: WatchMemo): PruneRules['needed'] {
-  if (snapshot === null) return channels.map((channel) => ({ channel, ordinal: 0 }));
+/** A watch that has no snapshot yet begins with the first sample; one whose snapshot cannot be read begins anew. */
+function neededBy(stored: StoredWatch, { channels }: WatchMemo): PruneRules['needed'] {
+  if (stored.snapshot === null) return channels.map((channel) => ({ channel, ordinal: 0 }));
+  const checkpoint = readable(() => checkpointOf(stored));
+  return Object.entries(checkpoint?.ordinals ?? {}).map(([channel, ordinal]) => ({ channel, ordinal }));
+}
+
+function readable<T>(read: () => T): T | null {
   try {
-    const { ordinals } = readCheckpoint(snapshot);
-    return Object.entries(ordinals).map(([channel, ordinal]) => ({ channel, ordinal }));
+    return read();
   } catch {
-    return [];
+    return null;
   }
 }

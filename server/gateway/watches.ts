@@ -12,10 +12,10 @@ import {
   type Checkpoint,
   createRunningWatch,
   type RunningWatch,
-  readCheckpoint,
   type Surroundings,
   type WatchMemo,
 } from './runningWatch.ts';
+import { checkpointOf, memoOf } from './storedWatch.ts';
 
 /** What somebody asked for and cannot have, with the status HTTP has for it. */
 export class Refused extends Error {
@@ -102,11 +102,16 @@ async function replay(running: RunningWatch, checkpoint: Checkpoint, store: Stor
   }
 }
 
+const beginsAnew = ({ name }: WatchMemo, found: string): string =>
+  `what the watch "${name}" remembered is damaged (${found.split('\n')[0]}); it begins anew and is blind until its window is full`;
+
 /** The running watches of a server and the models they use. */
 export function createWatches(needs: WatchesNeeds): Watches {
   const { store, channels, journal } = needs;
   const running = new Map<string, RunningWatch>();
   const models = new Map<string, { json: string; model: Model }>();
+  /** watches whose newest frame could not be pushed */
+  const failing = new Set<string>();
 
   const around: Surroundings = {
     ...needs,
@@ -122,22 +127,43 @@ export function createWatches(needs: WatchesNeeds): Watches {
     throw new Refused(404, 'NO_SUCH_WATCH', `there is no watch "${id}"; GET /api/watches lists them`);
   };
 
-  const restore = async ({ settings, snapshot }: StoredWatch) => {
-    const memo = JSON.parse(settings) as WatchMemo;
+  const restore = async (stored: StoredWatch) => {
+    const memo = memoOf(stored);
     const entry = models.get(memo.model);
     if (!entry) throw new Error(`its model "${memo.model}" is not in the store`);
-    const checkpoint = snapshot === null ? null : readCheckpoint(snapshot);
-    for (const [channel, offset] of Object.entries(checkpoint?.offsets ?? {}))
-      channels.restoreOffset(channel, offset);
     const since = memo.gradeSince ?? Number.NEGATIVE_INFINITY;
     const known = {
       warnings: (await store.warnings({ watch: memo.watch })).filter(({ at }) => at >= since),
       switches: (await store.switches({ watch: memo.watch })).filter(({ at }) => at >= since),
     };
-    const watch = createRunningWatch(memo, entry.model, checkpoint, known, around);
-    running.set(memo.watch, watch);
-    const from = checkpoint ?? { ...watch.checkpoint(), ordinals: everyOrdinal(watch) };
-    if (memo.use !== 'taken out of use') await replay(watch, from, store);
+    const resume = async () => {
+      const checkpoint = checkpointOf(stored);
+      for (const [channel, offset] of Object.entries(checkpoint?.offsets ?? {}))
+        channels.restoreOffset(channel, offset);
+      const watch = createRunningWatch(memo, entry.model, checkpoint, known, around);
+      const from = checkpoint ?? { ...watch.checkpoint(), ordinals: everyOrdinal(watch) };
+      if (memo.use !== 'taken out of use') await replay(watch, from, store);
+      return watch;
+    };
+    const beginAnew = (error: Error & { code?: string }) => {
+      if (error.code === 'SNAPSHOT_NEWER' || stored.snapshot === null) throw error;
+      needs.failed(beginsAnew(memo, error.message));
+      return createRunningWatch(memo, entry.model, null, known, around);
+    };
+    running.set(memo.watch, await resume().catch(beginAnew));
+  };
+  const pushTo = (watch: RunningWatch, frame: Frame) => {
+    try {
+      watch.push(frame);
+      failing.delete(watch.memo.watch);
+    } catch (error) {
+      // what it remembered was spoilt where nothing could tell: the others and the recording go on
+      const { memo } = watch;
+      const { model } = models.get(memo.model)!;
+      if (!failing.has(memo.watch)) needs.failed(beginsAnew(memo, (error as Error).message));
+      failing.add(memo.watch);
+      running.set(memo.watch, createRunningWatch(memo, model, null, { warnings: [], switches: [] }, around));
+    }
   };
   /** without a snapshot nothing of the channels was seen yet */
   const everyOrdinal = (watch: RunningWatch) =>
@@ -229,7 +255,7 @@ export function createWatches(needs: WatchesNeeds): Watches {
     push(frame) {
       for (const watch of running.values()) {
         if (!watch.wants(frame.channel)) continue;
-        watch.push(frame);
+        pushTo(watch, frame);
         needs.touch(watch.memo.watch);
       }
     },

@@ -1,5 +1,6 @@
 import { Encoder } from 'cbor-x';
 import { expect, it } from 'vitest';
+import { NO_ALARM } from '../../../server/gateway/alarmState.ts';
 import { createKeeping, type KeepingNeeds } from '../../../server/gateway/keeping.ts';
 import { openStore } from '../../../server/store/openStore.ts';
 import { Settings } from '../../../shared-types/settings.ts';
@@ -17,8 +18,11 @@ const TINY = 1;
 async function kept(settings: Partial<KeepingNeeds['settings']>, model = swingModel()) {
   const store = openStore(temporaryFolder(), { commitEvery: 0.001 });
   await store.appendFrames([frame(0, 0, new Float64Array(BLOCKS * BLOCK))]);
-  const memo = { watch: 'w', model: model.name, channels: ['A'], use: 'in use' };
-  const checkpoint = { snapshot: null, ordinals: { A: 38 * BLOCK }, offsets: {} };
+  const memo = {
+    ...{ watch: 'w', name: 'w', model: model.name, channels: ['A'], reaction: 30 },
+    ...{ use: 'in use', alarm: NO_ALARM, gradeSince: null },
+  };
+  const checkpoint = { snapshot: { version: 1 }, ordinals: { A: 38 * BLOCK }, offsets: {} };
   await store.saveWatch({
     watch: 'w',
     settings: JSON.stringify(memo),
