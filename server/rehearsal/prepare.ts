@@ -155,7 +155,7 @@ function checkSwitches(
   if (tuned === 0) {
     throw new InputError(
       'NO_SWITCH_TO_TUNE',
-      `none of the ${total} switches lies in the tuning part, expected several to choose settings by; raise --tune-part or give longer recordings`,
+      `no switch lies in the tuning part (${total === 1 ? 'the only one comes' : `all ${total} come`} later), expected several to choose settings by; raise --tune-part or give longer recordings`,
     );
   }
   const judged = recordings.reduce(

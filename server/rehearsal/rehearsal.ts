@@ -111,6 +111,7 @@ function judgeAndReport(
   const rival = rivalOf(
     judged[0]!,
     judged.slice(1).filter((one) => one.tuned.signal.name !== 'forcing'),
+    ground.ceiling !== null,
     createRandom(request.seed + 1).uniform,
   );
   const provenance = provenanceOf(task, prepared);

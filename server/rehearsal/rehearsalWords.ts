@@ -1,10 +1,9 @@
 import type { Contender } from '../../shared-types/rehearsal.ts';
 import type { Score } from '../../shared-types/score.ts';
 import { skillDifference } from './difference.ts';
-import type { Verdictable } from './judge.ts';
-import { tauOf } from './tally.ts';
+import { eventsOf, type Verdictable } from './judge.ts';
 import type { Tuned } from './tune.ts';
-import { scoreSentence, short, whereWords } from './words.ts';
+import { leadWords, scoreSentence, whereWords } from './words.ts';
 
 /** Unit of a signal's threshold. */
 function unitOf(name: string, unit: string): string {
@@ -42,26 +41,25 @@ export function contenderOf(
 }
 
 /**
- * The baseline with the highest skill on the judged part among those that kept within the ceiling when they were tuned
- * (where the chosen one did not, among all), and our skill less its. A baseline that may not be used is no rival.
+ * The baseline with the highest skill on the judged part, and our skill less its. Where a ceiling was agreed to and the
+ * chosen one keeps within it, a baseline that did not when it was tuned may not be used and is no rival; without a
+ * ceiling every one is, also one of whose warnings fewer than half come true.
  */
 export function rivalOf(
   ours: Verdictable,
   baselines: readonly Verdictable[],
+  ceiling: boolean,
   uniform: () => number,
 ): { judged: Verdictable; difference: { skill: number; value: number; low: number; high: number } } | null {
-  const fair = baselines.filter(({ tuned, point }) => point !== null && (ours.tuned.weak || !tuned.weak));
+  const fair = baselines.filter(
+    ({ tuned, point }) => point !== null && (!ceiling || ours.tuned.weak || !tuned.weak),
+  );
   const best = fair.reduce<Verdictable | null>(
     (found, one) => (found === null || one.point!.skill > found.point!.skill ? one : found),
     null,
   );
   if (best === null || ours.point === null) return null;
-  const seen = [...ours.blind.keys()].filter((i) => ours.blind[i] === 0);
-  const judged = ({ warned, point }: Verdictable) => ({
-    warned: Uint8Array.from(seen, (i) => warned[i]!),
-    tau: tauOf(point!.tally),
-  });
-  const difference = skillDifference(judged(ours), judged(best), uniform);
+  const difference = skillDifference(...eventsOf(ours.blocks, best.blocks), uniform);
   return { judged: best, difference: { skill: best.point!.skill, ...difference } };
 }
 
@@ -70,6 +68,6 @@ export function sentenceOf(watched: string, score: Score, word: string, rival: V
   const ours = scoreSentence(watched, score, word);
   if (rival === null || rival.point === null) return `${ours}.`;
   const { name } = rival.tuned.signal;
-  const lead = rival.medianLead === null ? '' : ` with ${short(rival.medianLead)} s`;
+  const lead = rival.medianLead === null ? '' : ` with ${leadWords(rival.medianLead)}`;
   return `${ours}; ${name} warned ${rival.point.tally.switches.warned}${lead}.`;
 }

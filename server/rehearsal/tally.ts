@@ -143,17 +143,40 @@ function meetsUnseen({ unseen }: Steps, from: number, to: number): boolean {
 
 /** Watched steps from `scoredFrom` on that lie inside the union of the spans. */
 export function spannedSteps(steps: Steps, warnings: Int32Array, size: number): number {
-  const { leastLead, horizon, scoredFrom } = steps;
+  return spannedWithin(steps, warnings, size, steps.scoredFrom, steps.count);
+}
+
+/** Watched steps in [first, end) that lie inside the union of the spans. */
+export function spannedWithin(
+  steps: Steps,
+  warnings: Int32Array,
+  size: number,
+  first: number,
+  end: number,
+): number {
+  const { leastLead, horizon } = steps;
   let spanned = 0;
-  let reached = scoredFrom;
-  for (let w = 0; w < size; w++) {
+  let reached = first;
+  for (let w = firstReaching(warnings, size, first - horizon); w < size; w++) {
     const from = Math.max(reached, warnings[w]! + leastLead + 1);
-    const to = warnings[w]! + horizon + 1;
+    if (from >= end) break;
+    const to = Math.min(end, warnings[w]! + horizon + 1);
     if (to <= from) continue;
     spanned += watchedWithin(steps, from, to);
     reached = to;
   }
   return spanned;
+}
+
+/** Index of the first of ascending warnings that is at `step` or later. */
+function firstReaching(warnings: Int32Array, size: number, step: number): number {
+  let [low, high] = [0, size];
+  while (low < high) {
+    const middle = (low + high) >> 1;
+    if (warnings[middle]! < step) low = middle + 1;
+    else high = middle;
+  }
+  return low;
 }
 
 /** detection = warned / (warned + late + missed); null where no switch counts. */

@@ -48,7 +48,9 @@ export interface Tried {
   steps: Steps;
   /** fold k is the steps foldFrom[k] … foldFrom[k + 1] − 1; empty: no folds */
   foldFrom: readonly number[];
+  /** steps at which the rule tried last warned, the first `size` entries; and what of them covers each switch */
   warnings: Int32Array;
+  size: number;
   cover: Int32Array;
 }
 
@@ -59,6 +61,7 @@ export function createTried(trace: Trace, steps: Steps, foldFrom: readonly numbe
     steps,
     foldFrom,
     warnings: new Int32Array(steps.count),
+    size: 0,
     cover: new Int32Array(steps.switches.length),
   };
 }
@@ -132,6 +135,7 @@ export function tryWarner(
   for (const one of tried) {
     const { steps, warnings, cover, foldFrom } = one;
     const size = warner(one);
+    one.size = size;
     if (foldFrom.length === 0) addTally(steps, warnings, size, cover, tally);
     // what is counted from one step on, less what is counted from a later one, is what lies between
     for (let k = 0; k + 1 < foldFrom.length; k++) {

@@ -62,7 +62,7 @@ function firstThatApplies(task: VerdictTask): Verdict {
     const plain = task.variable.startsWith('level') ? 'the plain level chosen here' : `the ${task.variable}`;
     return verdict(
       'no better than',
-      `No better than ${rival.name}: its skill is ${short(rival.skill)}, that of ${plain} ${short(skill!)}; difference ${short(rival.value)}, 95 % interval ${short(rival.low)} to ${short(rival.high)} on ${counted(total, word)}.`,
+      `No better than ${rival.name}: its skill is ${short(rival.skill)}, that of ${plain} ${short(skill!)}; difference ${short(rival.value)}, 95 % interval ${short(rival.low)} to ${short(rival.high)} on ${counted(total, word)}.${rival.name.startsWith('level') ? ' A plain level can be watched instead.' : ''}`,
       rival.name,
     );
   }

@@ -41,14 +41,32 @@ export function scoreSentence(watched: string, score: Score, word: string): stri
     `${watched} warned ${switches.warned} of ${counted(total, word)}`,
     `95 % interval ${low} to ${percent(detection.high)}`,
   ];
-  if (lead.median !== null) parts.push(`median lead ${short(lead.median)} s`);
-  if (falsePerHour.value !== null) parts.push(`${short(falsePerHour.value)} false warnings an hour`);
+  if (lead.median !== null) parts.push(`median lead ${leadWords(lead.median)}`);
+  if (falsePerHour.value !== null) parts.push(falseRateWords(falsePerHour.value));
   return parts.join(', ');
 }
 
-/** "12 minutes", "3.4 hours", "5 days" of seconds. */
+/** "12 minutes", "3.4 hours", "5 days", "2.1 years" of seconds. */
 export function spanWords(seconds: number): string {
   if (seconds < 90) return `${short(seconds)} seconds`;
   if (seconds < 5400) return `${short(seconds / 60)} minutes`;
-  return seconds < 4 * 86400 ? `${short(seconds / 3600)} hours` : `${short(seconds / 86400)} days`;
+  if (seconds < 4 * DAY) return `${short(seconds / HOUR)} hours`;
+  return seconds < YEAR ? `${short(seconds / DAY)} days` : `${short(seconds / YEAR)} years`;
+}
+
+const HOUR = 3600;
+const DAY = 86_400;
+const YEAR = 365.25 * DAY;
+
+/** A lead: in seconds as long as that can be read, "15.2 s", then as any span. */
+export const leadWords = (seconds: number): string =>
+  seconds < 600 ? `${short(seconds)} s` : spanWords(seconds);
+
+/** "0.8 false warnings an hour", and a day or a year where an hour is too short to have one in. */
+export function falseRateWords(perHour: number): string {
+  if (perHour === 0 || perHour >= 0.05) return `${short(perHour)} false warnings an hour`;
+  const perDay = (perHour * DAY) / HOUR;
+  return perDay >= 0.05
+    ? `${short(perDay)} false warnings a day`
+    : `${short((perHour * YEAR) / HOUR)} false warnings a year`;
 }
