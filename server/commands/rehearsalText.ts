@@ -7,6 +7,9 @@ import { counted, pluralOf } from '../rehearsal/words.ts';
 /** Below this a recording has elapsed time, not the time of a clock. */
 const CLOCK_TIME = 1e8;
 
+/** After a search so many warnings are printed line by line; of a given watch all are what was asked for. */
+const MOST_LISTED = 40;
+
 /** What `rehearse --json` prints. */
 export function jsonOfRehearsal(
   result: RehearsalResult,
@@ -81,6 +84,7 @@ export function describeRehearsal(result: RehearsalResult, model: Model, { warni
     ...warningLines(
       warnings,
       recordings.map(({ name }) => name),
+      tried > 1 ? MOST_LISTED : Number.POSITIVE_INFINITY,
     ),
   );
   return `${lines.join('\n')}\n`;
@@ -138,14 +142,21 @@ function shareWords({ skill, skillShare }: Score): string {
   return 'the horizon is too long for such frequent switches, even a perfect warner would have little skill';
 }
 
-function warningLines(warnings: readonly RehearsedWarning[], recordings: readonly string[]): string[] {
+function warningLines(
+  warnings: readonly RehearsedWarning[],
+  recordings: readonly string[],
+  most: number,
+): string[] {
   if (warnings.length === 0) return ['no warnings'];
+  const shown = warnings.slice(Math.max(0, warnings.length - most));
+  const left = warnings.length - shown.length;
+  const rest = left === 0 ? '' : `, the last ${most} (--json has them all)`;
   const lines = [
-    `${counted(warnings.length, 'warning')}:`,
+    `${counted(warnings.length, 'warning')}${rest}:`,
     'at                        value  outcome  lead    part',
   ];
   let recording = -1;
-  for (const warning of warnings) {
+  for (const warning of shown) {
     if (recordings.length > 1 && warning.recording !== recording) {
       lines.push(recordings[warning.recording]!);
       recording = warning.recording;
@@ -162,7 +173,7 @@ const timeText = (time: number): string =>
   time < CLOCK_TIME ? `${time.toFixed(3)} s` : new Date(time * 1000).toISOString();
 
 const round = (value: number | null, digits: number): string =>
-  value === null ? '–' : value.toFixed(digits);
+  value === null ? '–' : value.toFixed(digits).replace(/^-(0\.?0*)$/, '$1');
 
 const percent = (value: number | null): string => (value === null ? '–' : (100 * value).toFixed(0));
 

@@ -79,7 +79,7 @@ describe('foreshift rehearse', () => {
     expect(found.verdict.sentence.length).toBeGreaterThan(20);
   });
 
-  it('says it in a sentence first, then lists every warning', async () => {
+  it('says it in a sentence first, then lists every warning of a given watch', async () => {
     const { out } = await run(recording, '--model', model);
     const lines = out.trim().split('\n');
     expect(lines[0]).toMatch(
@@ -133,6 +133,13 @@ describe('foreshift rehearse', () => {
     const { verdict, fittedOnJudged } = JSON.parse((await run(recording, '--model', file, '--json')).out);
     expect(fittedOnJudged).toBe(true);
     expect(verdict.kind).not.toBe('useful');
+  });
+
+  it('lists the last forty warnings after a search, and says where all of them are', async () => {
+    const { out } = await run(recording, ...SEARCH);
+    const lines = out.trim().split('\n');
+    expect(out).toMatch(/\d+ warnings, the last 40 \(--json has them all\):/);
+    expect(lines.slice(lines.findIndex((line) => line.startsWith('at ')) + 1)).toHaveLength(40);
   });
 
   it('searches without a model: settings, score, baselines, how many were tried, a verdict', async () => {
