@@ -51,4 +51,6 @@ export type IngestErrorCode =
   | 'TOO_LARGE'
   | 'TOO_MANY_UNACKNOWLEDGED'
   | 'NOT_STORED'
-  | 'CHANNEL_IN_USE';
+  | 'CHANNEL_IN_USE'
+  | 'NOT_ALLOWED'
+  | 'TOO_MANY_CHANNELS';

@@ -22,5 +22,15 @@ export const Settings = z.strictObject({
     .min(64 * 1024 * 1024)
     .nullable()
     .default(null),
+  /** producers and pages that may be connected at once */
+  mostProducers: z.number().int().min(1).max(10_000).default(256),
+  mostPages: z.number().int().min(1).max(10_000).default(64),
+  /** channels there may be; what is named beyond them is refused */
+  mostChannels: z.number().int().min(1).max(100_000).default(2000),
+  /** frames and bytes a second that are read of one connection; a faster producer is read more slowly */
+  fastestFrames: z.number().positive().default(5000),
+  fastestBytes: z.number().positive().default(64_000_000),
+  /** a channel whose times differ from the server's clock by more than this is said to have a wrong clock, seconds */
+  clockTolerance: z.number().positive().default(5),
 });
 export type Settings = z.infer<typeof Settings>;

@@ -15,9 +15,14 @@ const FRAME_SAMPLES = 1000;
  * @param now        Unix seconds
  * @returns once all of it is on disk
  */
-export async function sendDemoPast(to: string, recordings: readonly string[], now: number): Promise<void> {
+export async function sendDemoPast(
+  to: string,
+  recordings: readonly string[],
+  now: number,
+  token: string | null = null,
+): Promise<void> {
   if (recordings.length === 0) return;
-  const producer = createProducer({ to, run: 'demo past', channels: createStand('past').channels });
+  const producer = createProducer({ to, token, run: 'demo past', channels: createStand('past').channels });
   for (const file of recordings) {
     const { channels } = await readRecording(file, {});
     for (const { channel, times, values } of channels) {

@@ -1,3 +1,4 @@
+import type { IncomingMessage } from 'node:http';
 import { Encoder } from 'cbor-x';
 import { WebSocket } from 'ws';
 import type { z } from 'zod';
@@ -27,6 +28,8 @@ export interface ProducerOptions {
   run: string;
   channels: z.input<typeof ChannelDescription>[];
   onState?: (state: ProducerState) => void;
+  /** shown to a server that asks for one; default: FORESHIFT_TOKEN of the environment */
+  token?: string | null;
   /** frames kept while the server cannot be reached; beyond it the oldest is given up. Default 20 000 */
   limit?: number;
 }
@@ -65,6 +68,22 @@ const DEAD_AFTER_MILLISECONDS = 15_000;
 /** close codes after which trying again with the same words is pointless */
 const REFUSED_FOR_GOOD = new Set([1002, 1003, 1007, 1008]);
 
+/** answers to the upgrade after which the same token will not do either */
+const NOT_LET_IN = new Set([401, 403, 404]);
+
+/** What a server says that does not let a producer in. */
+async function refusalOf(response: IncomingMessage): Promise<string> {
+  try {
+    let text = '';
+    for await (const part of response.setEncoding('utf8')) if (text.length < 10_000) text += part;
+    const { detail } = JSON.parse(text) as { detail?: unknown };
+    if (typeof detail === 'string') return detail;
+  } catch {
+    // no problem details: its status tells
+  }
+  return `it answered ${response.statusCode}`;
+}
+
 const encoder = new Encoder({ useRecords: false });
 
 /**
@@ -74,6 +93,7 @@ const encoder = new Encoder({ useRecords: false });
  */
 export function createProducer(options: ProducerOptions): Producer {
   const limit = options.limit ?? 20_000;
+  const token = options.token === undefined ? (process.env.FORESHIFT_TOKEN ?? null) : options.token;
   const say = options.onState ?? (() => {});
   const nextSeq = new Map<string, number>();
   const kept = new Map<string, Kept[]>();
@@ -180,6 +200,10 @@ export function createProducer(options: ProducerOptions): Producer {
     cursor = 0;
     for (const frame of queue) frame.sent = false;
     if (closed) return;
+    if (failure !== null) {
+      settleWaiters();
+      return;
+    }
     if (REFUSED_FOR_GOOD.has(code)) {
       failure = new Error(`${options.to} refused this producer: ${reason || `close code ${code}`}`);
       settleWaiters();
@@ -196,9 +220,16 @@ export function createProducer(options: ProducerOptions): Producer {
     const opening = new WebSocket(options.to, INGEST_PROTOCOL, {
       perMessageDeflate: false,
       handshakeTimeout: 10_000,
+      headers: token === null ? {} : { Authorization: `Bearer ${token}` },
     });
     socket = opening;
     let problem = '';
+    opening.on('unexpected-response', async (_request, response) => {
+      problem = await refusalOf(response);
+      if (NOT_LET_IN.has(response.statusCode ?? 0))
+        failure = new Error(`${options.to} refused this producer: ${problem}`);
+      opening.terminate();
+    });
     opening.on('open', () =>
       opening.send(JSON.stringify({ hello: 1, run: options.run, channels: options.channels })),
     );
@@ -206,7 +237,7 @@ export function createProducer(options: ProducerOptions): Producer {
       if (!binary) hear(JSON.parse(String(data)) as IngestReply);
     });
     opening.on('error', (error) => {
-      problem = error.message || String((error as NodeJS.ErrnoException).code);
+      problem ||= error.message || String((error as NodeJS.ErrnoException).code);
     });
     opening.on('close', (code, reason) => lost(code, reason.toString() || problem));
   }

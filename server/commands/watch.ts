@@ -1,11 +1,16 @@
 import { type ChildProcess, fork, spawn } from 'node:child_process';
 import { readFile } from 'node:fs/promises';
+import { hostname } from 'node:os';
 import { join } from 'node:path';
 import { fileURLToPath } from 'node:url';
 import { parseArgs } from 'node:util';
 import { Settings } from '../../shared-types/settings.ts';
 import type { NewWatchToSend } from '../../shared-types/watch.ts';
+import { createAccess } from '../gateway/access.ts';
+import { inUrl, isLoopback } from '../gateway/hostCheck.ts';
+import type { Tls } from '../gateway/httpServer.ts';
 import { complaint } from '../gateway/ingestFrame.ts';
+import type { Log } from '../gateway/logLines.ts';
 import { type RunningServer, startServer } from '../gateway/server.ts';
 import { modelFromJson } from '../model/modelFile.ts';
 import { InputError } from '../signal/inputError.ts';
@@ -13,17 +18,24 @@ import { createStoreThread } from '../store/storeThread.ts';
 import { createWatch } from '../watch/watch.ts';
 import { runCommand, wholeOption } from './options.ts';
 import { programName } from './program.ts';
+import { asksForTokens, logChoice, tlsChoice, unixSeconds } from './watchOptions.ts';
 
 const HELP = `foreshift watch [options]
 
 Serves the pages, takes in live channels, records them and warns.
 
   --port N          port of the pages and of ingest (default: 4717, or FORESHIFT_PORT)
-  --listen ADDRESS  127.0.0.1 (default) or ::1; only this machine can connect
+  --listen ADDRESS  127.0.0.1 (default): only this machine can connect, and may do everything. Any other address of
+                    this machine, or 0.0.0.0 for all: others can connect, each with a token (foreshift token --help)
+  --certificate FILE --key FILE   PEM: pages by https, producers by wss
+  --name HOST       a name this server is reached by, beside this machine's own; may be given again
+  --tokens          ask for tokens also where only this machine can connect (behind a proxy, say)
   --data DIR        what is recorded (default: ./foreshift-data, or FORESHIFT_DATA)
   --model MODEL.json --channel NAME   watch this channel with this model; --channel again for a model of several
   --demo            an invented stand with two water loops, and a watch on each
   --no-browser      do not open the page
+  --log FORM        sentences (default): warnings and errors; json: all that happens, one JSON object a line
+  --log-to FILE     where the log is added to (default: standard error)
 
 example: foreshift watch --model loop.json --channel "loop 1, dT"
 `;
@@ -36,10 +48,14 @@ const OPTIONS = {
   channel: { type: 'string', multiple: true },
   demo: { type: 'boolean' },
   'no-browser': { type: 'boolean' },
+  certificate: { type: 'string' },
+  key: { type: 'string' },
+  name: { type: 'string', multiple: true },
+  tokens: { type: 'boolean' },
+  log: { type: 'string' },
+  'log-to': { type: 'string' },
   help: { type: 'boolean', short: 'h' },
 } as const;
-
-const LOOPBACK = new Set(['127.0.0.1', '::1', 'localhost']);
 
 interface Choice {
   port: number;
@@ -48,6 +64,11 @@ interface Choice {
   model: { json: string; channels: string[] } | null;
   demo: boolean;
   browser: boolean;
+  /** whether others than this machine's own are asked for a token */
+  tokens: boolean;
+  tls: Tls | null;
+  names: string[];
+  log: Log;
 }
 
 async function modelChoice(
@@ -76,18 +97,18 @@ async function choose(argv: string[]): Promise<Choice | null> {
   if (port > 65535)
     throw new InputError('BAD_OPTION', `--port is ${port}, expected 0 to 65535; write --port 4717`);
   const listen = values.listen ?? '127.0.0.1';
-  if (!LOOPBACK.has(listen))
-    throw new InputError(
-      'NOT_LOOPBACK',
-      `--listen is ${listen}, but only this machine may connect for now; leave --listen out, or write --listen 127.0.0.1`,
-    );
+  const data = values.data ?? process.env.FORESHIFT_DATA ?? './foreshift-data';
   return {
     port,
     listen,
-    data: values.data ?? process.env.FORESHIFT_DATA ?? './foreshift-data',
+    data,
     model: await modelChoice(values.model, values.channel),
     demo: values.demo === true,
     browser: values['no-browser'] !== true,
+    tokens: asksForTokens(listen, values.tokens === true, data),
+    tls: await tlsChoice(values.certificate, values.key),
+    names: values.name ?? [],
+    log: await logChoice(values.log, values['log-to']),
   };
 }
 
@@ -126,12 +147,13 @@ function openBrowser(address: string): void {
 const newestStored = ({ hub: { channels } }: RunningServer): number =>
   Math.max(0, ...channels.names().map((channel) => channels.newest(channel) ?? 0));
 
-function startStand(ingest: string, after: number, lock: string): ChildProcess {
+function startStand(server: RunningServer, lock: string): ChildProcess {
   const file = import.meta.url.endsWith('.js') ? './standRig.js' : './standRig.ts';
   return fork(
     fileURLToPath(new URL(file, import.meta.url)),
-    ['--to', ingest, '--after', String(after), '--lock', lock],
+    ['--to', server.ownIngest, '--after', String(newestStored(server)), '--lock', lock],
     {
+      env: { ...process.env, ...(server.ownToken === null ? {} : { FORESHIFT_TOKEN: server.ownToken }) },
       stdio: ['ignore', 'ignore', 'inherit', 'ipc'],
     },
   );
@@ -161,22 +183,39 @@ async function startDemo(server: RunningServer, data: string, ingest: string): P
   const { sendDemoPast } = await import('./demoPast.ts');
   const { models, watches, recordings } = await prepareDemo(data);
   const unknown = recordings.filter((_, k) => !server.hub.channels.has(watches[k]!.channels[0]!));
-  await sendDemoPast(ingest, unknown, Date.now() / 1000);
+  await sendDemoPast(ingest, unknown, Date.now() / 1000, server.ownToken);
   for (const wanted of watches) {
     const model = models.find(({ name }) => name === wanted.model)!;
     await startWatch(server, model.json, wanted);
   }
 }
 
-function sayWhere(address: string, server: RunningServer, choice: Choice): void {
+/** Where a person finds the page, and a producer its ingest. */
+function addressesOf({ listen, names, tls }: Choice, port: number): { page: string; ingest: string } {
+  const everywhere = listen === '0.0.0.0' || listen === '::';
+  const host = inUrl(names[0] ?? (everywhere ? hostname() : listen));
+  const secure = tls === null ? '' : 's';
+  return { page: `http${secure}://${host}:${port}/`, ingest: `ws${secure}://${host}:${port}/ingest` };
+}
+
+function sayWhere(page: string, ingest: string, choice: Choice): void {
   process.stdout.write(
     `${programName()}\n` +
-      `  page       ${address}\n` +
-      `  producers  ws://${choice.listen}:${server.port}/ingest\n` +
+      `  page       ${page}\n` +
+      `  producers  ${ingest}\n` +
       `  data       ${choice.data}\n` +
+      (choice.tokens ? '  tokens     asked for; foreshift token creates and withdraws them\n' : '') +
       'An aid to attention, not a safety function: local codes and licensed practice govern protection.\n' +
       'Ctrl-C stops it.\n',
   );
+}
+
+function warnOfPlainText(log: Log): void {
+  log({
+    level: 'warning',
+    event: 'not encrypted',
+    text: 'tokens and data cross the network unencrypted: whoever can listen there can use them; add --certificate FILE --key FILE, or let a proxy on this machine speak TLS',
+  });
 }
 
 function untilStopped(): Promise<void> {
@@ -191,6 +230,7 @@ async function start(choice: Choice): Promise<RunningServer> {
   if (choice.model) modelFromJson(choice.model.json);
   const settings = await readSettings(choice.data);
   const store = await createStoreThread(choice.data, { commitEvery: settings.commitEvery });
+  const warn = (text: string) => choice.log({ level: 'warning', event: 'trouble', text });
   try {
     return await startServer({
       port: choice.port,
@@ -201,14 +241,33 @@ async function start(choice: Choice): Promise<RunningServer> {
       program: programName(),
       createWatch,
       readModel: modelFromJson,
-      warn: (text) => process.stderr.write(`foreshift watch: ${text}\n`),
+      warn,
+      log: choice.log,
+      names: choice.names,
+      ...(choice.tls === null ? {} : { tls: choice.tls }),
+      ...(choice.tokens
+        ? {
+            access: createAccess({
+              folder: choice.data,
+              now: unixSeconds,
+              secure: choice.tls !== null,
+              warn,
+            }),
+          }
+        : {}),
       player: {
         program: [process.execPath, fileURLToPath(new URL('./main.js', import.meta.url))],
         data: choice.data,
       },
     });
   } catch (error) {
-    if ((error as NodeJS.ErrnoException).code !== 'EADDRINUSE') throw error;
+    const { code } = error as NodeJS.ErrnoException;
+    if (code === 'EADDRNOTAVAIL' || code === 'ENOTFOUND')
+      throw new InputError(
+        'BAD_ADDRESS',
+        `--listen is ${choice.listen}, which is no address of this machine; write one it has, or 0.0.0.0 for all`,
+      );
+    if (code !== 'EADDRINUSE') throw error;
     throw new InputError(
       'PORT_IN_USE',
       `port ${choice.port} is taken by another program; stop it, or choose another with --port ${choice.port + 1}`,
@@ -226,14 +285,13 @@ async function run(argv: string[]): Promise<number> {
   let stand: ChildProcess | null = null;
   try {
     if (choice.model) await startWatch(server, choice.model.json, { channels: choice.model.channels });
-    const host = choice.listen === '::1' ? '[::1]' : choice.listen;
-    const address = `http://${host}:${server.port}/`;
-    const ingest = `ws://${host}:${server.port}/ingest`;
-    if (choice.demo) await startDemo(server, choice.data, ingest);
+    const { page, ingest } = addressesOf(choice, server.port);
+    if (!isLoopback(choice.listen) && choice.tls === null) warnOfPlainText(choice.log);
+    if (choice.demo) await startDemo(server, choice.data, server.ownIngest);
     const stopped = untilStopped();
-    if (choice.demo) stand = startStand(ingest, newestStored(server), join(choice.data, 'demo', 'rig.lock'));
-    sayWhere(address, server, choice);
-    if (choice.browser) openBrowser(address);
+    if (choice.demo) stand = startStand(server, join(choice.data, 'demo', 'rig.lock'));
+    sayWhere(page, ingest, choice);
+    if (choice.browser) openBrowser(page);
     await stopped;
   } finally {
     stand?.kill('SIGTERM');

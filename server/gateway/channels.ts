@@ -1,6 +1,12 @@
 import type { ChannelDescription, ChannelState } from '../../shared-types/channel.ts';
 import type { FrameToStore, StoredChannel } from '../store/store.ts';
-import { type ClockOffset, channelTime, createClockOffset, noteArrival } from './clockOffset.ts';
+import {
+  type ClockOffset,
+  channelTime,
+  createClockOffset,
+  noteArrival,
+  serverStepped,
+} from './clockOffset.ts';
 
 /** A moment by both clocks: Unix seconds of the server, and seconds that never step. */
 export interface Moment {
@@ -71,6 +77,8 @@ export interface Channels {
   time(channel: string, serverTime: number): number | null;
   leastOffset(channel: string): number | null;
   restoreOffset(channel: string, least: number | null): void;
+  /** the server's clock was set forwards by so many seconds */
+  serverStepped(seconds: number): void;
   interval(channel: string): number | null;
   state(channel: string, moment: Moment): ChannelState;
   states(moment: Moment): ChannelState[];
@@ -284,6 +292,9 @@ export function createChannels(): Channels {
     restoreOffset(name, least) {
       const channel = channels.get(name);
       if (channel && channel.clock.least === null) channel.clock = createClockOffset(least);
+    },
+    serverStepped(seconds) {
+      for (const { clock } of channels.values()) serverStepped(clock, seconds);
     },
     interval: (name) => channels.get(name)?.description.interval ?? null,
     state: (name, moment) => stateOf(get(name), moment),

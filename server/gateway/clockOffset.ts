@@ -61,6 +61,21 @@ export function noteArrival(clock: ClockOffset, time: number, arrival: number): 
   clock.newest = arrival;
 }
 
+/**
+ * The server's clock was set: what was known of the channel's stays true of the new one, so that channel time goes on.
+ *
+ * @param clock   overwritten
+ * @param seconds by which it was set forwards
+ */
+export function serverStepped(clock: ClockOffset, seconds: number): void {
+  if (clock.least !== null) clock.least += seconds;
+  if (clock.smooth !== null) clock.smooth += seconds;
+  clock.windowStart += seconds;
+  clock.windowFirst += seconds;
+  clock.windowLeast += seconds;
+  clock.newest += seconds;
+}
+
 /** Channel time at a moment of the server clock; null before the first sample. */
 export function channelTime(clock: ClockOffset, serverTime: number): number | null {
   return clock.least === null ? null : serverTime - clock.least;

@@ -1,17 +1,24 @@
 import { existsSync } from 'node:fs';
-import type { IncomingMessage } from 'node:http';
 import { fileURLToPath } from 'node:url';
-import express, { type Request, type Response } from 'express';
+import express, { type Request } from 'express';
 import { z } from 'zod';
 import type { ModelEvidence } from '../../shared-types/model.ts';
 import { NewWatch, WatchAction } from '../../shared-types/watch.ts';
 import { evidenceOf } from '../model/evidence.ts';
-import { answerError, columnsAsked, numberIn, problem, read, sendEither, text } from './httpAnswers.ts';
+import type { Access, Identity } from './access.ts';
+import { may } from './accessRules.ts';
+import type { HostCheck } from './hostCheck.ts';
+import { gate, nameTheDoer, routeAccess } from './httpAccess.ts';
+import { answerErrors, columnsAsked, numberIn, problem, read, sendEither, text } from './httpAnswers.ts';
+import { keepNothing, setHeaders } from './httpHeaders.ts';
 import { routeLogbook } from './httpLogbook.ts';
 import { routeMarks } from './httpMarks.ts';
 import { routePlays } from './httpPlays.ts';
 import { routeRecordingColumns, routeRehearsals } from './httpRehearsals.ts';
+import { answerNothing, onlyJson, wantsUpgrade } from './httpRoutes.ts';
 import type { Hub } from './hub.ts';
+import type { Log } from './logLines.ts';
+import { OPEN_METRICS_TYPE } from './openMetrics.ts';
 import type { Plays } from './plays.ts';
 import type { Rehearsals } from './rehearsals.ts';
 import { samplesAsCsv } from './samplesCsv.ts';
@@ -19,39 +26,12 @@ import { Refused } from './watches.ts';
 
 const Use = z.object({ use: z.enum(['in use', 'on trial', 'taken out of use']) });
 
-const CONTENT_SECURITY_POLICY = [
-  "default-src 'self'",
-  // the chart library sets sizes and colours as inline styles
-  "style-src 'self' 'unsafe-inline'",
-  "img-src 'self' data:",
-  "object-src 'none'",
-  "base-uri 'none'",
-  "form-action 'self'",
-  "frame-ancestors 'none'",
-].join('; ');
-
 const MOST_ENTRIES = 10_000;
-const LOOPBACK = new Set(['localhost', '127.0.0.1', '[::1]']);
 
 /** Where the built pages are, from the source as well as from what was built of it. */
 function pagesFolder(): string {
   const built = import.meta.url.endsWith('.js');
   return fileURLToPath(new URL(built ? '../../client/' : '../../dist/client/', import.meta.url));
-}
-
-/**
- * Why a request may not come in, or null. A page of another origin must not steer the server through its reader's
- * browser, nor reach it under a name of its own that points to this machine.
- */
-export function whyNotAllowed(headers: IncomingMessage['headers']): string | null {
-  const host = headers.host ?? '';
-  const name = host.replace(/:\d+$/, '');
-  if (!LOOPBACK.has(name))
-    return `the request names host "${host}"; ask for http://localhost or http://127.0.0.1`;
-  const { origin } = headers;
-  if (origin !== undefined && origin !== `http://${host}`)
-    return `a page of ${origin} may not use this server; open its own page at http://${host}/`;
-  return null;
 }
 
 function routeChannels(app: express.Express, hub: Hub): void {
@@ -169,44 +149,61 @@ function routeRecords(app: express.Express, hub: Hub): void {
 
 const FIRST_PAGE_MISSING = 'The pages are not built; run npm run build, then reload.';
 
+/** What the routes work on, and who may use them. */
+export interface HttpNeeds {
+  rehearsals: Rehearsals;
+  plays: Plays;
+  access: Access;
+  check: HostCheck;
+  log: Log;
+  /** OpenMetrics text */
+  metrics(): string;
+}
+
+function routeServer(app: express.Express, hub: Hub, { access, log, metrics }: HttpNeeds): void {
+  app.get('/health', (_request, response) => {
+    const { identity } = response.locals as { identity: Identity | null };
+    // what the trouble is concerns who may look
+    response.json({ status: 'serving', ...(may(identity, 'viewer') ? { trouble: hub.trouble() } : {}) });
+  });
+  app.get('/metrics', (_request, response) => {
+    response.set('Content-Type', OPEN_METRICS_TYPE).send(Buffer.from(metrics()));
+  });
+  routeAccess(app, access, log);
+  for (const path of ['/ingest', '/feed']) app.get(path, wantsUpgrade);
+  app.get('/', (_request, response) => problem(response, 503, FIRST_PAGE_MISSING, 'NOT_BUILT'));
+}
+
+/** The pages' files; anyone may have them, there is nothing in them but the program. */
+function servePages(app: express.Express): void {
+  const pages = pagesFolder();
+  if (existsSync(pages)) app.use(express.static(pages, { dotfiles: 'ignore', redirect: false }));
+}
+
 /** HTTP: health, what is known, what a person may do, and the pages. Errors are RFC 9457 problem details. */
-export function createHttpApp(hub: Hub, work: { rehearsals: Rehearsals; plays: Plays }): express.Express {
+export function createHttpApp(hub: Hub, needs: HttpNeeds): express.Express {
   const app = express();
   app.disable('x-powered-by');
+  app.use(setHeaders);
   app.use((request, response, next) => {
-    response.set('Content-Security-Policy', CONTENT_SECURITY_POLICY);
-    response.set('X-Content-Type-Options', 'nosniff');
-    response.set('Referrer-Policy', 'no-referrer');
-    const reason = whyNotAllowed(request.headers);
+    const reason = needs.check(request.headers);
     if (reason === null) next();
-    else problem(response, 403, 'Not allowed', reason, 'OTHER_ORIGIN');
+    else problem(response, 403, reason, 'OTHER_ORIGIN');
   });
-  app.get('/health', (_request, response) => {
-    response.json({ status: 'serving', trouble: hub.trouble() });
-  });
-  app.use('/api', (_request, response, next) => {
-    response.set('Cache-Control', 'no-store');
-    next();
-  });
+  servePages(app);
+  app.use(keepNothing, gate(needs.access, needs.log), onlyJson);
   routeModels(app, hub);
-  app.use(express.json({ limit: '1mb', type: () => true }));
+  app.use(express.json({ limit: '1mb', type: () => true }), nameTheDoer);
+  routeServer(app, hub, needs);
   routeChannels(app, hub);
   routeWatches(app, hub);
   routeRecords(app, hub);
   routeMarks(app, hub.leftOut);
   routeLogbook(app, hub);
   routeRecordingColumns(app, hub);
-  routeRehearsals(app, hub, work.rehearsals);
-  routePlays(app, work.plays);
-  const pages = pagesFolder();
-  if (existsSync(pages)) app.use(express.static(pages));
-  else
-    app.get('/', (_request, response) => {
-      response.status(503).type('text/plain').send(FIRST_PAGE_MISSING);
-    });
-  app.use((request: Request, response: Response) => {
-    problem(response, 404, 'Not found', `there is nothing at ${request.method} ${request.path}`, 'NOT_FOUND');
-  });
-  app.use(answerError);
+  routeRehearsals(app, hub, needs.rehearsals);
+  routePlays(app, needs.plays);
+  app.use(answerNothing(app));
+  app.use(answerErrors(needs.log));
   return app;
 }

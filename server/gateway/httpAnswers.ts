@@ -1,23 +1,26 @@
+import { STATUS_CODES } from 'node:http';
 import { Encoder } from 'cbor-x';
 import type { NextFunction, Request, Response } from 'express';
 import type { z } from 'zod';
 import { InputError } from '../signal/inputError.ts';
 import { looksLikeTime, parseTime } from '../signal/time.ts';
 import { complaint } from './ingestFrame.ts';
+import type { Log } from './logLines.ts';
 import { Refused } from './watches.ts';
 
 const encoder = new Encoder({ useRecords: false });
 
-/** Answers with an RFC 9457 problem. */
-export function problem(
-  response: Response,
-  status: number,
-  title: string,
-  detail: string,
-  code: string,
-): void {
+/**
+ * The body of a problem by RFC 9457: of no type of its own (4.2.1), so its title is the status's; `code` is the stable
+ * name of what went wrong.
+ */
+export const problemJson = (status: number, detail: string, code: string): string =>
+  JSON.stringify({ type: 'about:blank', title: STATUS_CODES[status] ?? 'Error', status, detail, code });
+
+/** Answers with a problem. */
+export function problem(response: Response, status: number, detail: string, code: string): void {
   response.status(status).type('application/problem+json');
-  response.send(JSON.stringify({ type: 'about:blank', title, status, detail, code }));
+  response.send(problemJson(status, detail, code));
 }
 
 /**
@@ -87,38 +90,35 @@ export function columnsAsked(query: Request['query'], newest: number | null, spa
   return { from, to, columns };
 }
 
+/** What is wrong with a request by its error: status, sentence, code. */
+function judged(error: unknown): [number, string, string] {
+  const { status = 500, type, message } = error as { status?: number; type?: string; message: string };
+  if (error instanceof Refused) return [error.status, message, error.code];
+  if (error instanceof InputError) return [400, message, error.code];
+  if (type === 'entity.parse.failed')
+    return [400, `the body is not JSON: ${message}; send one JSON document`, 'NOT_JSON'];
+  if (type === 'entity.too.large') return [413, 'the body is too large; send a smaller one', 'TOO_LARGE'];
+  if (status === 415) return [415, `${message}; send JSON in UTF-8, not packed or as gzip`, 'NOT_JSON'];
+  if (status >= 400 && status < 500) return [status, `${message}; send it anew`, 'BAD_REQUEST'];
+  return [500, message, 'FAILED'];
+}
+
 /** The last middleware: every error as a problem. */
-export function answerError(
-  error: unknown,
-  _request: Request,
-  response: Response,
-  _next: NextFunction,
-): void {
-  if (response.headersSent) {
-    response.destroy();
-    return;
-  }
-  const { status, type, message } = error as { status?: number; type?: string; message: string };
-  if (error instanceof Refused)
-    problem(
-      response,
-      error.status,
-      error.status === 404 ? 'Not found' : 'Cannot be done',
-      message,
-      error.code,
-    );
-  else if (error instanceof InputError) problem(response, 400, 'Cannot be used', message, error.code);
-  else if (type === 'entity.parse.failed')
-    problem(
-      response,
-      400,
-      'Not JSON',
-      `the body is not JSON: ${message}; send one JSON document`,
-      'NOT_JSON',
-    );
-  else if (type === 'entity.too.large')
-    problem(response, 413, 'Too large', 'the body is too large; send a smaller one', 'TOO_LARGE');
-  else if (status !== undefined && status >= 400 && status < 500)
-    problem(response, status, 'Cannot be used', message, 'BAD_REQUEST');
-  else problem(response, 500, 'Failed', message, 'FAILED');
+export function answerErrors(log: Log) {
+  // a middleware for errors is known by its four arguments
+  return (error: unknown, request: Request, response: Response, _next: NextFunction): void => {
+    const [status, detail, code] = judged(error);
+    const { method, path } = request;
+    if (status >= 500)
+      log({
+        level: 'error',
+        event: 'request failed',
+        text: `${method} ${path} failed: ${detail}`,
+        method,
+        path,
+        status,
+      });
+    if (response.headersSent) response.destroy();
+    else problem(response, status, detail, code);
+  };
 }

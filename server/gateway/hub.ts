@@ -4,11 +4,14 @@ import type { Hello, IngestErrorCode } from '../../shared-types/ingest.ts';
 import type { Model } from '../../shared-types/model.ts';
 import type { Settings } from '../../shared-types/settings.ts';
 import type { FrameToStore, Store } from '../store/store.ts';
+import { createChannelClocks } from './channelClocks.ts';
 import { type Channels, createChannels, type Moment } from './channels.ts';
+import { type Counts, createCounts } from './counts.ts';
 import { createIngestSession, type IngestDoors, type IngestSession, type Refusal } from './ingestSession.ts';
 import { createJournal, type Journal } from './journal.ts';
 import { createKeeping } from './keeping.ts';
 import { createLeftOut, type LeftOutRegistry } from './leftOut.ts';
+import type { Log } from './logLines.ts';
 import { createRecorder, type Recorder } from './recorder.ts';
 import type { Surroundings } from './runningWatch.ts';
 import { createWatches, type Watches } from './watches.ts';
@@ -31,8 +34,13 @@ export interface Hub {
   store: Store;
   settings: Settings;
   now(): Moment;
-  /** a producer's connection; `close` ends its socket */
-  producer(reply: IngestDoors['reply'], close: IngestDoors['close']): IngestSession;
+  /** a producer's connection; `close` ends its socket, `feeds` says which channels its token is for */
+  producer(
+    reply: IngestDoors['reply'],
+    close: IngestDoors['close'],
+    feeds?: (channel: string) => boolean,
+  ): IngestSession;
+  counts: Counts;
   frames$: Subject<FrameToStore>;
   traces$: Subject<TracedSteps>;
   /** to be sent to every page at once */
@@ -42,6 +50,8 @@ export interface Hub {
   trouble(): string | null;
   /** once a second */
   tick(): void;
+  /** the server's clock was set forwards by so many seconds */
+  clockStepped(seconds: number): void;
   /** resolves once everything taken is settled and written */
   close(): Promise<void>;
 }
@@ -53,6 +63,7 @@ export interface HubNeeds {
   createWatch: Surroundings['createWatch'];
   readModel(json: string): Model;
   warn(text: string): void;
+  log?: Log;
 }
 
 /** A producer's hold on a channel. */
@@ -60,6 +71,7 @@ interface Holder {
   run: string | null;
   session: IngestSession;
   close: IngestDoors['close'];
+  feeds(channel: string): boolean;
 }
 
 const TAKEN_OVER = 4001;
@@ -68,6 +80,9 @@ const TAKEN_OVER = 4001;
 export async function createHub(needs: HubNeeds): Promise<Hub> {
   const { store, settings, now } = needs;
   const channels = createChannels();
+  const counts = createCounts();
+  const log: Log = needs.log ?? (() => {});
+  const newsOfClocks = createChannelClocks(settings.clockTolerance);
   const frames$ = new Subject<FrameToStore>();
   const traces$ = new Subject<TracedSteps>();
   const news$ = new Subject<FeedMessage>();
@@ -129,6 +144,8 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
 
   const take: IngestDoors['take'] = (frame, _arrival, settled) => {
     const gaps = channels.take(frame, now());
+    counts.frames.add(frame.channel, 1);
+    counts.samples.add(frame.channel, frame.values.length);
     if (gaps > 0) attempt(store.countFault(frame.channel, 'gap', gaps));
     recorder.append(frame, (problem) => {
       if (problem === null) channels.stored(frame);
@@ -178,10 +195,30 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
     }
   };
 
+  /** why a producer may not have a channel, or null; `more`: new ones it names besides */
+  const notHad = (channel: string, run: string | null, holder: Holder, more: number): Refusal | null => {
+    if (!holder.feeds(channel))
+      return {
+        code: 'NOT_ALLOWED',
+        channel,
+        detail: `this token may not feed "${channel}"; use the token of that channel, or create one`,
+      };
+    if (channels.has(channel)) return inUse(channel, run, holder.session);
+    const all = channels.names().length;
+    if (all + more < settings.mostChannels) return null;
+    return {
+      code: 'TOO_MANY_CHANNELS',
+      channel,
+      detail: `there are ${all} channels and "${channel}" would be beyond the ${settings.mostChannels} there may be; use one there is, or raise mostChannels in settings.json`,
+    };
+  };
+
   const greet = async (hello: Hello, holder: Holder): ReturnType<IngestDoors['greet']> => {
+    let more = 0;
     for (const { channel } of hello.channels) {
-      const refusal = channels.has(channel) ? inUse(channel, hello.run, holder.session) : null;
+      const refusal = notHad(channel, hello.run, holder, more);
       if (refusal) return { ok: false, refusal };
+      if (!channels.has(channel)) more++;
     }
     const saving: Promise<void>[] = [];
     for (const description of hello.channels) {
@@ -198,19 +235,21 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
   };
 
   const claim = (channel: string, interval: number | null, holder: Holder): Refusal | null => {
+    const refusal = notHad(channel, null, holder, 0);
+    if (refusal) return refusal;
     if (!channels.has(channel)) {
       const description = { channel, unit: '', label: '', interval, low: null, high: null };
       channels.describe(description);
       attempt(store.saveChannel(description));
-    } else {
-      const refusal = inUse(channel, null, holder.session);
-      if (refusal) return refusal;
     }
     hold(channel, holder);
     return null;
   };
 
-  const refused = (channel: string | null, _code: IngestErrorCode, detail: string) => {
+  const refused = (channel: string | null, code: IngestErrorCode, detail: string) => {
+    counts.refused.add(code, 1);
+    const named = channel === null ? {} : { channel };
+    log({ level: 'notice', event: 'frame refused', text: detail, code, ...named });
     if (channel === null || !channels.has(channel)) return;
     channels.refused(channel, detail);
     touched$.next(`channel ${channel}`);
@@ -223,8 +262,8 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
     journal.log({ kind: 'hole', channel, watch: null, by: null, text: `the producer skipped ${frames}` });
   };
 
-  const producer: Hub['producer'] = (reply, close) => {
-    const holder = { run: null, close } as unknown as Holder;
+  const producer: Hub['producer'] = (reply, close, feeds = () => true) => {
+    const holder = { run: null, close, feeds } as unknown as Holder;
     const session = createIngestSession(
       {
         greet(hello) {
@@ -252,9 +291,18 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
     };
   };
 
+  const tellOfClocks = () => {
+    for (const { channel, wrong, offset, text } of newsOfClocks(channels, now())) {
+      const level = wrong ? 'warning' : 'notice';
+      log({ level, event: 'channel clock', text, channel, seconds: offset });
+      journal.log({ kind: 'server', channel, watch: null, by: null, text });
+    }
+  };
+
   return {
     channels,
     watches,
+    counts,
     leftOut,
     journal,
     recorder,
@@ -278,7 +326,9 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
       attempt(watches.saveProgress());
       journal.retry();
       keeping.tick();
+      tellOfClocks();
     },
+    clockStepped: channels.serverStepped,
     async close() {
       await keeping.close();
       await recorder.idle();

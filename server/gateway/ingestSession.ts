@@ -254,7 +254,8 @@ export function createIngestSession(doors: IngestDoors, limits: IngestLimits): I
     if (!answer.ok) {
       const { code, detail, channel } = answer.refusal;
       refuse(code, detail, channel, null);
-      return doors.close(TRY_AGAIN_LATER, detail.slice(0, 100));
+      const forGood = code === 'NOT_ALLOWED' || code === 'TOO_MANY_CHANNELS';
+      return doors.close(forGood ? POLICY_VIOLATION : TRY_AGAIN_LATER, detail.slice(0, 100));
     }
     mode = 'running';
     for (const [channel, run] of answer.runs) {

@@ -36,6 +36,8 @@ export interface PlaysNeeds {
   channels: Channels;
   /** address of this server's ingest */
   ingest(): string;
+  /** the token that ingest asks for; null: none */
+  token: string | null;
 }
 
 const MOST_RUNNING = 4;
@@ -51,7 +53,7 @@ interface Entry {
   ended: Promise<void>;
 }
 
-export function createPlays({ player, journal, channels, ingest }: PlaysNeeds): Plays {
+export function createPlays({ player, journal, channels, ingest, token }: PlaysNeeds): Plays {
   const entries = new Map<string, Entry>();
   let nextId = 1;
 
@@ -131,6 +133,8 @@ export function createPlays({ player, journal, channels, ingest }: PlaysNeeds): 
       const child = spawn(program[0]!, [...program.slice(1), ...options], {
         // by the channel it notices when this server is no more
         stdio: ['ignore', 'ignore', 'pipe', 'ipc'],
+        // never in the arguments: those are for all to see
+        env: { ...process.env, ...(token === null ? {} : { FORESHIFT_TOKEN: token }) },
       });
       entries.set(id, { state, child, ended: follow(state, child) });
       log(state, `played as "${as}", pace ${pace}`);

@@ -8,6 +8,8 @@ export interface Recorder {
   skip(channel: string, run: string, seq: number, digest: number, settled: Settled): void;
   /** hands everything queued to the store: what is asked of the store next comes after it */
   flush(): void;
+  /** samples taken and not yet on disk */
+  waiting(): number;
   /** resolves once everything handed over is settled */
   idle(): Promise<void>;
 }
@@ -71,6 +73,7 @@ export function createRecorder(store: Store, onTrouble: (text: string | null) =>
       track(store.skipFrame(channel, run, seq, digest), [settled], 0);
     },
     flush,
+    waiting: () => waitingSamples,
     async idle() {
       flush();
       while (handedOver.size > 0) await Promise.all(handedOver);

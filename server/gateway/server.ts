@@ -1,19 +1,26 @@
-import { createServer, type IncomingMessage, type Server } from 'node:http';
-import type { AddressInfo } from 'node:net';
+import type { IncomingMessage, Server } from 'node:http';
 import type { Duplex } from 'node:stream';
-import { type WebSocket, WebSocketServer } from 'ws';
 import { FEED_PROTOCOL } from '../../shared-types/feed.ts';
 import { INGEST_PROTOCOL } from '../../shared-types/ingest.ts';
 import type { Model } from '../../shared-types/model.ts';
 import { Settings } from '../../shared-types/settings.ts';
 import type { Store } from '../store/store.ts';
+import { type Access, type Identity, openAccess } from './access.ts';
+import { may } from './accessRules.ts';
 import type { Moment } from './channels.ts';
-import { createFeedSession, type FeedFacts } from './feed.ts';
-import { createHttpApp, whyNotAllowed } from './http.ts';
+import { createHostCheck, inUrl } from './hostCheck.ts';
+import { createHttpApp } from './http.ts';
+import { routesOf } from './httpRoutes.ts';
+import { createHttpServer, listening, type Tls } from './httpServer.ts';
 import { createHub, type Hub } from './hub.ts';
+import { type Log, sparing } from './logLines.ts';
+import { createMetrics } from './metrics.ts';
 import { createPlays, type Player } from './plays.ts';
 import { createRehearsals } from './rehearsals.ts';
 import type { Surroundings } from './runningWatch.ts';
+import { createServerClock, machineClock, stepText } from './serverClock.ts';
+import { goodbye, putOut, servePages, serveProducers, watchLiveness } from './sockets.ts';
+import { socketServer, takeUpgrade } from './upgrades.ts';
 
 export interface ServerOptions {
   /** 0: any free port */
@@ -31,147 +38,69 @@ export interface ServerOptions {
   /** the built program that plays recordings, and the data folder it reads them from; left out: nothing is played */
   player?: Player;
   clock?: () => Moment;
+  /** who may do what; left out: whoever can connect may do everything */
+  access?: Access;
+  tls?: Tls;
+  /** names this server is reached by, beside this machine's own */
+  names?: string[];
+  /** left out: warnings go to `warn` */
+  log?: Log;
 }
 
 export interface RunningServer {
   port: number;
   hub: Hub;
+  /** where this machine's own producers connect, without TLS */
+  ownIngest: string;
+  /** what they show there; null: nothing is asked for */
+  ownToken: string | null;
+  /** every HTTP route, as "GET /api/channels" */
+  routes(): string[];
   /** stops taking, commits, acknowledges, saves snapshots, says goodbye with 1001 and closes the store */
   close(): Promise<void>;
 }
 
-/** Larger messages end the connection with 1009; frames are refused in words long before. */
-const LARGEST_MESSAGE_BYTES = 64 * 1024 * 1024;
+/** Larger messages end the connection with 1009; frames that are too large are refused in words long before. */
+const FRAME_BYTES = 32 * 1024 * 1024;
+const SAMPLE_BYTES = 64;
 const LARGEST_REQUEST_BYTES = 64 * 1024;
-/** A producer that reads none of its replies is hung up on; it may come again and hears where it stands. */
-const UNREAD_REPLIES_BYTES = 1_000_000;
-const GOING_AWAY = 1001;
-const GOODBYE_MILLISECONDS = 1000;
-/** a connection that answers no ping for this long is dead */
-const PING_MILLISECONDS = 10_000;
+/** connections that are neither producers nor pages */
+const OTHER_CONNECTIONS = 256;
+/** the same complaint is logged at most so often, seconds */
+const SPARING_SECONDS = 10;
 
-/** The server's clocks: Unix seconds that advance with the monotonic clock, so that ages and spans never step. */
-export function systemClock(): () => Moment {
-  const offset = Date.now() / 1000 - performance.now() / 1000;
-  return () => {
-    const monotonic = performance.now() / 1000;
-    return { server: offset + monotonic, monotonic };
-  };
+const addressOf = (scheme: 'ws' | 'wss', listen: string, port: number): string =>
+  `${scheme}://${inUrl(listen)}:${port}/ingest`;
+
+/** Where this server's own producers connect: here, without TLS, whatever else is listened on. */
+async function ownAddress(listen: string, port: number, tls: Tls | null, inner: Server): Promise<string> {
+  if (tls !== null) return addressOf('ws', '127.0.0.1', await listening(inner, 0, '127.0.0.1'));
+  const everywhere = listen === '0.0.0.0' || listen === '::';
+  return addressOf('ws', everywhere ? '127.0.0.1' : listen, port);
 }
 
-function serveProducers(hub: Hub, sockets: WebSocketServer): void {
-  sockets.on('connection', (socket: WebSocket) => {
-    const session = hub.producer(
-      (reply) => {
-        if (socket.readyState !== socket.OPEN) return;
-        socket.send(JSON.stringify(reply));
-        if (socket.bufferedAmount > UNREAD_REPLIES_BYTES) socket.terminate();
-      },
-      (code, reason) => socket.close(code, reason),
-    );
-    socket.on('message', (data: Buffer, binary) =>
-      session.message(binary ? data : data.toString('utf8'), hub.now().server),
-    );
-    socket.on('error', () => {});
-    socket.on('close', () => session.end());
+function logHappenings(hub: Hub, log: Log): void {
+  const issued = new Set<number>();
+  hub.news$.subscribe((message) => {
+    if (message.kind === 'log') {
+      const { kind, channel, watch, text } = message.entry;
+      log({
+        level: 'notice',
+        event: `logbook: ${kind}`,
+        text,
+        ...(channel ? { channel } : {}),
+        ...(watch ? { watch } : {}),
+      });
+    }
+    if (message.kind === 'warning' && !issued.has(message.warning.id)) {
+      const { id, watch, outcome } = message.warning;
+      issued.add(id);
+      if (issued.size > 10_000) issued.delete(issued.values().next().value!);
+      if (outcome === 'open')
+        log({ level: 'notice', event: 'warning issued', text: `warning ${id} was issued`, watch });
+    }
   });
 }
-
-function servePages(hub: Hub, sockets: WebSocketServer, facts: FeedFacts): void {
-  sockets.on('connection', (socket: WebSocket) => {
-    const session = createFeedSession(
-      hub,
-      {
-        send(message, written) {
-          if (socket.readyState === socket.OPEN)
-            socket.send(message, { binary: true }, (error) => {
-              if (!error) written?.();
-            });
-        },
-        waiting: () => socket.bufferedAmount,
-        close: (code, reason) => socket.close(code, reason),
-      },
-      facts,
-    );
-    socket.on('message', (data: Buffer) => session.request(data.toString('utf8')));
-    socket.on('error', () => {});
-    socket.on('close', () => session.end());
-  });
-}
-
-function socketServer(protocol: string, maxPayload: number): WebSocketServer {
-  return new WebSocketServer({
-    noServer: true,
-    maxPayload,
-    perMessageDeflate: false,
-    // A five-minute producer need not know the protocol's name.
-    handleProtocols: (offered) => (offered.has(protocol) ? protocol : false),
-  });
-}
-
-function refuseUpgrade(socket: Duplex, status: string, detail: string): void {
-  const body = JSON.stringify({ type: 'about:blank', title: status, detail });
-  socket.end(
-    `HTTP/1.1 ${status}\r\nContent-Type: application/problem+json\r\nContent-Length: ${Buffer.byteLength(body)}\r\n` +
-      `Connection: close\r\n\r\n${body}`,
-  );
-}
-
-function route(http: Server, paths: Record<string, WebSocketServer>): void {
-  http.on('upgrade', (request: IncomingMessage, socket: Duplex, head: Buffer) => {
-    socket.on('error', () => socket.destroy());
-    const reason = whyNotAllowed(request.headers);
-    if (reason !== null) return refuseUpgrade(socket, '403 Forbidden', reason);
-    const path = (request.url ?? '').split('?')[0]!;
-    const sockets = paths[path];
-    if (!sockets)
-      return refuseUpgrade(socket, '404 Not Found', 'producers connect to /ingest, pages to /feed');
-    sockets.handleUpgrade(request, socket, head, (opened) => sockets.emit('connection', opened, request));
-  });
-}
-
-/** Ends connections whose other side has vanished without a word. */
-function watchLiveness(all: WebSocketServer[]): NodeJS.Timeout {
-  const unanswered = new WeakSet<WebSocket>();
-  const timer = setInterval(() => {
-    for (const sockets of all)
-      for (const socket of sockets.clients) {
-        if (unanswered.has(socket)) {
-          socket.terminate();
-          continue;
-        }
-        unanswered.add(socket);
-        socket.once('pong', () => unanswered.delete(socket));
-        socket.ping();
-      }
-  }, PING_MILLISECONDS);
-  timer.unref();
-  return timer;
-}
-
-function goodbye(all: WebSocketServer[]): Promise<void> {
-  const closed = all.flatMap((sockets) =>
-    [...sockets.clients].map(
-      (socket) =>
-        new Promise<void>((resolve) => {
-          socket.once('close', () => resolve());
-          socket.close(GOING_AWAY, 'the server is stopping');
-          setTimeout(() => socket.terminate(), GOODBYE_MILLISECONDS).unref();
-        }),
-    ),
-  );
-  return Promise.all(closed).then(() => {});
-}
-
-function listening(http: Server, port: number, host: string): Promise<number> {
-  return new Promise((resolve, reject) => {
-    http.once('error', reject);
-    http.listen(port, host, () => resolve((http.address() as AddressInfo).port));
-  });
-}
-
-const ingestAddress = (listen: string, port: number): string =>
-  `ws://${listen === '::1' ? '[::1]' : listen}:${port}/ingest`;
 
 /**
  * Starts the server: HTTP and the two WebSockets on one port, over a store that it closes in the end.
@@ -179,72 +108,130 @@ const ingestAddress = (listen: string, port: number): string =>
  * @throws the system's error when the port cannot be had; the store is closed then
  */
 export async function startServer(options: ServerOptions): Promise<RunningServer> {
-  const { store, demo, program } = options;
-  const now = options.clock ?? systemClock();
+  const { store, demo, program, listen } = options;
+  const settings = options.settings ?? Settings.parse({});
+  const clock = createServerClock(machineClock);
+  const now = options.clock ?? clock.now;
+  const monotonic = () => now().monotonic;
+  const log: Log = options.log ?? (({ level, text }) => level !== 'notice' && options.warn(text));
+  const seldom = sparing(log, SPARING_SECONDS, monotonic);
+  const access = options.access ?? openAccess();
+  const tls = options.tls ?? null;
   const hub = await createHub({
     store,
-    settings: options.settings ?? Settings.parse({}),
+    settings,
     now,
     createWatch: options.createWatch,
     readModel: options.readModel,
     warn: options.warn,
+    log: seldom,
   });
+  const note = (text: string) =>
+    hub.journal.log({ kind: 'server', channel: null, watch: null, by: null, text });
+  logHappenings(hub, log);
   for (const notice of store.notices ?? []) {
     options.warn(notice);
-    hub.journal.log({ kind: 'server', channel: null, watch: null, by: null, text: notice });
+    note(notice);
   }
   const rehearsals = await createRehearsals({
     store,
     journal: hub.journal,
-    gap: hub.settings.recordingGap,
+    gap: settings.recordingGap,
     program,
     serverTime: () => now().server,
     leftOutVersion: hub.leftOut.version,
     flushFrames: hub.recorder.flush,
     failed: options.warn,
   });
+  let ownIngest = '';
   const plays = createPlays({
     player: options.player ?? null,
     journal: hub.journal,
     channels: hub.channels,
-    ingest: () => ingestAddress(options.listen, port),
+    ingest: () => ownIngest,
+    token: access.ownToken,
   });
-  const app = createHttpApp(hub, { rehearsals, plays });
-  const http = createServer({ maxHeaderSize: 16 * 1024 }, app);
-  const ingest = socketServer(INGEST_PROTOCOL, LARGEST_MESSAGE_BYTES);
+  const startedAt = now().server;
+  const ingest = socketServer(INGEST_PROTOCOL, FRAME_BYTES + SAMPLE_BYTES * settings.largestFrame);
   const feed = socketServer(FEED_PROTOCOL, LARGEST_REQUEST_BYTES);
-  route(http, { '/ingest': ingest, '/feed': feed });
+  const sockets = [ingest, feed];
+  const metrics = createMetrics(hub, {
+    program,
+    startedAt,
+    producers: () => ingest.clients.size,
+    pages: () => feed.clients.size,
+  });
+  const check = createHostCheck(listen, options.names ?? []);
+  const app = createHttpApp(hub, { rehearsals, plays, access, check, log, metrics: metrics.text });
+  const most = settings.mostProducers + settings.mostPages + OTHER_CONNECTIONS;
+  const http = createHttpServer(app, tls, most);
+  const inner = createHttpServer(app, null, most);
+  const doors = {
+    '/ingest': {
+      sockets: ingest,
+      lets: ({ role }: Identity) => role === 'everything' || role === 'producer',
+      others: 'is no producer’s; create one of role producer for what feeds channels',
+      most: settings.mostProducers,
+    },
+    '/feed': {
+      sockets: feed,
+      lets: (identity: Identity) => may(identity, 'viewer'),
+      others: 'is a producer’s: it feeds channels and reads nothing',
+      most: settings.mostPages,
+    },
+  };
+  for (const each of [http, inner])
+    each.on('upgrade', (request: IncomingMessage, socket: Duplex, head: Buffer) =>
+      takeUpgrade(request, socket, head, { check, access, doors, log: seldom }),
+    );
+  serveProducers(hub, ingest, { log: seldom, monotonic });
   let port = 0;
   try {
-    port = await listening(http, options.port, options.listen);
+    port = await listening(http, options.port, listen);
+    ownIngest = await ownAddress(listen, port, tls, inner);
   } catch (error) {
+    http.close();
     await store.close();
     throw error;
   }
-  serveProducers(hub, ingest);
-  servePages(hub, feed, {
-    program,
-    startedAt: now().server,
-    demo,
-    ingestAddress: ingestAddress(options.listen, port),
-  });
-  const ticking = setInterval(hub.tick, 1000);
-  const liveness = watchLiveness([ingest, feed]);
-  hub.journal.log({ kind: 'server', channel: null, watch: null, by: null, text: `${program} started` });
+  const ingestAddress = addressOf(tls === null ? 'ws' : 'wss', options.names?.[0] ?? listen, port);
+  servePages(hub, feed, { program, startedAt, demo, ingestAddress }, { log, monotonic });
+  const ticking = setInterval(() => {
+    hub.tick();
+    metrics.tick();
+    putOut(sockets);
+    const step = options.clock ? null : clock.check();
+    if (step === null) return;
+    if (step.taken) hub.clockStepped(step.seconds);
+    log({ level: 'warning', event: 'clock set', text: stepText(step), seconds: step.seconds });
+    note(stepText(step));
+  }, 1000);
+  const liveness = watchLiveness(sockets);
+  note(`${program} started`);
 
   let closing: Promise<void> | null = null;
   const shutDown = async () => {
     clearInterval(ticking);
     clearInterval(liveness);
     http.close();
+    inner.close();
     await Promise.all([plays.close(), rehearsals.close()]);
     for (const socket of ingest.clients) socket.pause();
-    hub.journal.log({ kind: 'server', channel: null, watch: null, by: null, text: `${program} stopped` });
+    note(`${program} stopped`);
+    metrics.close();
     await hub.close();
     for (const socket of ingest.clients) socket.resume();
-    await goodbye([ingest, feed]);
+    await goodbye(sockets);
     http.closeAllConnections();
+    inner.closeAllConnections();
     await store.close();
   };
-  return { port, hub, close: () => (closing ??= shutDown()) };
+  return {
+    port,
+    hub,
+    ownIngest,
+    ownToken: access.ownToken,
+    routes: () => routesOf(app),
+    close: () => (closing ??= shutDown()),
+  };
 }

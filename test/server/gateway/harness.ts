@@ -1,6 +1,6 @@
 import { afterEach } from 'vitest';
 import { WebSocket } from 'ws';
-import { type RunningServer, startServer } from '../../../server/gateway/server.ts';
+import { type RunningServer, type ServerOptions, startServer } from '../../../server/gateway/server.ts';
 import { modelFromJson, modelToJson } from '../../../server/model/modelFile.ts';
 import { openStore } from '../../../server/store/openStore.ts';
 import { createWatch } from '../../../server/watch/watch.ts';
@@ -16,7 +16,11 @@ afterEach(async () => {
 });
 
 /** A real server on a free port over a data folder; closed after the test. */
-export async function serve(folder: string, settings: Partial<Settings> = {}): Promise<RunningServer> {
+export async function serve(
+  folder: string,
+  settings: Partial<Settings> = {},
+  more: Partial<ServerOptions> = {},
+): Promise<RunningServer> {
   const server = await startServer({
     port: 0,
     listen: '127.0.0.1',
@@ -27,6 +31,7 @@ export async function serve(folder: string, settings: Partial<Settings> = {}): P
     createWatch,
     readModel: modelFromJson,
     warn: () => {},
+    ...more,
   });
   servers.push(server);
   return server;
