@@ -17,8 +17,8 @@ export interface Pruner {
 /** Blocks looked at and given up in a step: a few milliseconds. */
 const LOOKED_AT = 256;
 const MOST_BLOCKS = 64;
-/** The ceiling is held with so much to spare: for what arrives until the next step and for the log beside the database. */
-const SPARE_BYTES = 8 * 1024 * 1024;
+/** The ceiling is held with so much to spare, for the log beside the database and what arrives until the next step. */
+const SPARE_BYTES = 24 * 1024 * 1024;
 /** A block takes at least so many bytes. */
 const BLOCK_BYTES = BLOCK_SAMPLES * 8;
 /** Free pages given back to the disk in a step. */
