@@ -5,8 +5,11 @@ import { modelFromJson } from '../../server/model/modelFile.ts';
 import { openStore } from '../../server/store/openStore.ts';
 import { createWatch } from '../../server/watch/watch.ts';
 import type { ChannelState } from '../../shared-types/channel.ts';
-import { api, connect } from '../server/gateway/harness.ts';
+import type { FeedMessage } from '../../shared-types/feed.ts';
+import { api, connect, swing, swingModelJson, until } from '../server/gateway/harness.ts';
 import { temporaryFolder } from '../server/store/temporaryFolder.ts';
+import { createListener } from './builtServer.ts';
+import { report } from './report.ts';
 
 const servers: RunningServer[] = [];
 afterEach(async () => {
@@ -103,4 +106,61 @@ it('a producer that keeps what is not acknowledged loses nothing to a disk that 
   expect([...refusals]).toEqual(['NOT_STORED']);
   const { values } = await store.samplesFrom('c', 0, 1e6);
   expect(values).toEqual(Float64Array.from(Array.from({ length: seq }, (_, i) => valuesOf(i)).flat()));
+});
+
+it('while the disk is full the page says so and warnings go on; with room again they are in the log', async () => {
+  const { server, store } = await cramped();
+  const post = (path: string, body: string) =>
+    fetch(`http://127.0.0.1:${server.port}${path}`, { method: 'POST', body });
+  await post('/api/models', swingModelJson());
+  await post('/api/watches', JSON.stringify({ model: 'swing', channels: ['c'] }));
+  const troubles: (string | null)[] = [];
+  const told = new Set<number>();
+  const leave = createListener(
+    () => server.port,
+    (message: FeedMessage) => {
+      if (message.kind === 'trouble') troubles.push(message.text);
+      if (message.kind === 'warning') told.add(message.warning.at);
+    },
+  );
+  const producer = createProducer({
+    to: `ws://127.0.0.1:${server.port}/ingest`,
+    run: 'r',
+    channels: [{ channel: 'c', interval: 0.1 }, { channel: 'ballast' }],
+  });
+  const [swingFrames, each] = [40, 200];
+  const fill = async () => {
+    for (let seq = 0; !troubles.some((text) => text !== null); seq++) {
+      producer.send('ballast', { t0: seq * 2, dt: 0.001, values: Float64Array.from(valuesOf(seq)) });
+      await new Promise((resolve) => setTimeout(resolve, 10));
+    }
+  };
+  const swingFrom = (seq: number) =>
+    producer.send('c', { t0: 0.1 * each * seq, dt: 0.1, values: swing(each * seq, each) });
+  for (let seq = 0; seq < swingFrames / 2; seq++) swingFrom(seq);
+  await until(() => told.size > 0);
+  await fill();
+  const before = told.size;
+  for (let seq = swingFrames / 2; seq < swingFrames; seq++) swingFrom(seq);
+  await until(() => told.size > before + 5);
+  expect(troubles.at(-1)).toContain('not being recorded');
+  expect((await api(server.port, '/health')).status).toBe(200);
+
+  await store.removeRehearsal('1');
+  await producer.idle();
+  await until(async () => (await store.warnings({})).length >= told.size && troubles.at(-1) === null);
+  await producer.close();
+  leave();
+  const logged = (await store.warnings({})).map(({ at }) => at);
+  const { values } = await store.samplesFrom('c', 0, 1e6);
+  report({
+    tried: 'a full disk, watched',
+    acknowledged: swingFrames * each,
+    lost: swingFrames * each - values.length,
+    twice: logged.length - new Set(logged).size,
+    'warnings told while it was full': told.size - before,
+    'told and not in the log': [...told].filter((at) => !logged.includes(at)).length,
+  });
+  expect(values).toEqual(swing(0, swingFrames * each));
+  expect(new Set(logged)).toEqual(told);
 });
