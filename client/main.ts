@@ -1,6 +1,8 @@
 import 'uplot/dist/uPlot.min.css';
 import { ReplaySubject } from 'rxjs';
 import type { FeedRequest } from '../shared-types/feed.ts';
+import { leaveIfOut, signedIn } from './access/signedIn.ts';
+import { enter } from './access/signIn.ts';
 import { feed } from './feed.ts';
 import { news$ } from './news.ts';
 import { PAGES } from './pages.ts';
@@ -8,11 +10,19 @@ import { createNavigation, route } from './route.ts';
 import { mountWatch } from './watch/page.ts';
 import { stripPlaceAt } from './watch/place.ts';
 
+const host = document.getElementById('page')!;
+const who = await enter(host);
+const signedInLine = signedIn(who);
 const look$ = new ReplaySubject<FeedRequest>(1);
 const navigation = createNavigation(PAGES);
-const page = mountWatch(document.getElementById('page')!, navigation.root, (look) => look$.next({ look }));
+const page = mountWatch(host, navigation.root, (look) => look$.next({ look }));
 const address = `${location.protocol === 'https:' ? 'wss' : 'ws'}://${location.host}/feed`;
 
+if (signedInLine !== null) {
+  // what explains itself stands above what it stops, the rest below
+  if (who.role === 'viewer') page.body.before(signedInLine);
+  else page.body.after(signedInLine);
+}
 route(PAGES, page.body, (shown) => {
   navigation.here(shown);
   page.called(shown.name);
@@ -26,6 +36,9 @@ lookAtPlace();
 feed(address, look$).subscribe((happening) => {
   if (happening.kind === 'message') page.receive(happening.message);
   else if (happening.kind === 'open') page.opened();
-  else page.closed();
+  else {
+    page.closed();
+    void leaveIfOut();
+  }
   news$.next(happening);
 });

@@ -1,4 +1,5 @@
 import type { ChannelState } from '../../shared-types/channel.ts';
+import { changes } from '../access/changes.ts';
 import { element, mark, say } from '../dom.ts';
 import { recall, remember } from '../remembered.ts';
 import { addNote } from './requests.ts';
@@ -22,7 +23,7 @@ export function createNoteForm(): NoteForm {
   by.maxLength = 80;
   by.value = recall('by', '');
   mark(by, 'autocomplete', 'name');
-  const add = element('button', '', 'Add note');
+  const add = changes(element('button', '', 'Add note'));
   const said = element('p', 'noteSaid');
   mark(said, 'role', 'status');
   const fault = element('p', 'fault');

@@ -1,6 +1,7 @@
 import type { ChannelState } from '../../shared-types/channel.ts';
 import type { ModelEvidence } from '../../shared-types/model.ts';
 import type { WatchState } from '../../shared-types/watch.ts';
+import { changes } from '../access/changes.ts';
 import { button, element, mark, say } from '../dom.ts';
 import { gradeSentence } from '../warningWords.ts';
 import * as requests from './requests.ts';
@@ -57,7 +58,7 @@ export function createUses(
         'div',
         'buttons',
         ...STEPS[watch.use].map(([words, to]) =>
-          button(words, 'quiet', () => void attempt(requests.setUse(watch.watch, to))),
+          changes(button(words, 'quiet', () => void attempt(requests.setUse(watch.watch, to)))),
         ),
       ),
     ),
@@ -98,6 +99,7 @@ function trialForm(
       }),
     ),
   );
+  changes(begin);
   begin.disabled = names.length === 0;
   return element(
     'div',

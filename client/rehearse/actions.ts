@@ -1,4 +1,5 @@
 import type { PlayState, RehearsalResult } from '../../shared-types/rehearsal.ts';
+import { changes } from '../access/changes.ts';
 import { button, element, mark, say } from '../dom.ts';
 import { capital } from '../words.ts';
 import { choiceControl, createField } from './fields.ts';
@@ -53,6 +54,7 @@ export function createActions(id: string, result: RehearsalResult, unit: string)
         watch.disabled = false;
       });
   });
+  changes(watch);
   const caution =
     verdict.kind === 'useful'
       ? null
@@ -110,7 +112,7 @@ function playForm(result: RehearsalResult, row: () => number): { opener: HTMLEle
     createField(recording, { name: 'Recording', help: 'Sent anew with present times.' }),
     createField(pace, { name: 'Pace', help: 'How fast it is sent.' }),
   ];
-  const run = element('button', '', 'Play');
+  const run = changes(element('button', '', 'Play'));
   run.type = 'submit';
   const state = element('p', 'actionSaid');
   mark(state, 'role', 'status');
@@ -141,7 +143,7 @@ function playForm(result: RehearsalResult, row: () => number): { opener: HTMLEle
       const halt = button('Stop playing', '', () => {
         requests.stopPlay(play.id).catch((error: Error) => say(trouble, error.message));
       });
-      state.replaceChildren(`Playing as “${name}”. `, toWatch(), ' ', halt);
+      state.replaceChildren(`Playing as “${name}”. `, toWatch(), ' ', changes(halt));
     } else if (play.state === 'failed')
       state.replaceChildren(`Playing “${name}” failed: ${play.fault ?? 'no reason was given'}`);
     else

@@ -1,5 +1,6 @@
 import type { ChannelState } from '../../shared-types/channel.ts';
 import type { RehearsalRequest } from '../../shared-types/rehearsal.ts';
+import { changes } from '../access/changes.ts';
 import { element, mark, say } from '../dom.ts';
 import { recall, remember } from '../remembered.ts';
 import { choiceControl, createField, type Field, offer, textControl } from './fields.ts';
@@ -55,7 +56,7 @@ export function createForm(run: (request: RehearsalRequest) => void): RehearseFo
   const faultLine = element('p', 'fieldFault');
   mark(faultLine, 'role', 'alert');
   say(faultLine, null);
-  const go = element('button', 'first', 'Rehearse');
+  const go = changes(element('button', 'first', 'Rehearse'));
   go.type = 'submit';
 
   const chosen = (): RecordingName[] =>

@@ -1,4 +1,5 @@
 import type { Condition, Mark, NewMark, StoredCondition } from '../../shared-types/rehearsal.ts';
+import { changes } from '../access/changes.ts';
 import { button, element, mark, say } from '../dom.ts';
 import { recall } from '../remembered.ts';
 import { clockText, minuteText, spanText } from '../words.ts';
@@ -64,7 +65,7 @@ export function createLeftOutFields(changed: () => void): LeftOutFields {
     none.hidden = items.length > 0;
   };
   const item = (words: string, remove: () => Promise<unknown>) => {
-    const take = button('Remove', 'quiet', () => doIt(remove));
+    const take = changes(button('Remove', 'quiet', () => doIt(remove)));
     mark(take, 'aria-label', `Remove: ${words}`);
     return element('li', '', element('span', '', words), take);
   };
@@ -214,5 +215,5 @@ function conditionForm(add: (made: Omit<Condition, 'channel'>) => void) {
 function submit(text: string): HTMLButtonElement {
   const made = element('button', '', text);
   made.type = 'submit';
-  return made;
+  return changes(made);
 }

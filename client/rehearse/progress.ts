@@ -1,4 +1,5 @@
 import type { RehearsalState } from '../../shared-types/rehearsal.ts';
+import { changes } from '../access/changes.ts';
 import { button, element, mark, say } from '../dom.ts';
 import { capital } from '../words.ts';
 import { leftText, requestText } from './text.ts';
@@ -27,6 +28,7 @@ export function createProgress(stop: (id: string) => void): Progress {
   const halt = button('Stop', '', () => {
     if (shown !== null) stop(shown.id);
   });
+  changes(halt);
   const trouble = element('p', 'fieldFault');
   say(trouble, null);
   const root = element('section', 'progress', asked, element('div', 'barRow', bar, halt), doing, trouble);

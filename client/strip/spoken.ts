@@ -1,3 +1,4 @@
+import { changes } from '../access/changes.ts';
 import { button, element, mark, say } from '../dom.ts';
 import { headline, lastText, leftText, phaseOf, promiseText, unwarnedText } from '../warningWords.ts';
 import { clockText, leftOutText } from '../words.ts';
@@ -57,6 +58,7 @@ export function createSpoken(actions: StripActions): Spoken {
     '',
     doing((now) => actions.explainWatching(now.channel.channel, now.watch === null ? 'nothing' : 'no rule')),
   );
+  for (const each of [acknowledge, shelve, back]) changes(each);
   const buttons = element('p', 'buttons', acknowledge, shelve, back, explain);
   say(fault, null);
   return {

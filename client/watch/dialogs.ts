@@ -1,3 +1,4 @@
+import { changes } from '../access/changes.ts';
 import { button, element, mark, say } from '../dom.ts';
 import { recall, remember } from '../remembered.ts';
 import { act, models, startWatch } from '../requests.ts';
@@ -48,7 +49,7 @@ export function askToShelve(watch: string, name: string): void {
   const fault = element('p', 'fault');
   say(fault, null);
   mark(fault, 'role', 'alert');
-  const send = element('button', 'first', 'Shelve');
+  const send = changes(element('button', 'first', 'Shelve'));
   const cancel = button('Cancel', '', () => dialog.close());
   const form = element(
     'form',
@@ -156,5 +157,5 @@ async function offerModels(channel: string, host: HTMLElement, done: () => void)
       say(fault, error instanceof Error ? error.message : String(error));
     }
   });
-  host.append(field('A model there is', choice), element('p', 'buttons', start), fault);
+  host.append(field('A model there is', choice), element('p', 'buttons', changes(start)), fault);
 }

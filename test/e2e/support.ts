@@ -52,7 +52,7 @@ export async function startBuilt(options: string[]): Promise<Built> {
   const port = await new Promise<number>((resolve, reject) => {
     const hear = (data: Buffer) => {
       said += String(data);
-      const found = /http:\/\/127\.0\.0\.1:(\d+)\//.exec(said);
+      const found = /https?:\/\/127\.0\.0\.1:(\d+)\//.exec(said);
       if (found !== null) resolve(Number(found[1]));
     };
     child.stdout.on('data', hear);
