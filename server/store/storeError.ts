@@ -19,12 +19,15 @@ export class StoreError extends Error {
   }
 }
 
+/** SHMSIZE: not even the index of the log finds room. */
+const FULL_CODES = new Set(['SQLITE_FULL', 'SQLITE_IOERR_WRITE', 'SQLITE_IOERR_SHMSIZE', 'ENOSPC']);
+
 /** Any fault as a StoreError: SQLite's result codes become the store's own, with the remedy. */
 export function asStoreError(fault: unknown): StoreError {
   if (fault instanceof StoreError) return fault;
   const code = String((fault as { code?: unknown } | null)?.code ?? '');
   const text = fault instanceof Error ? fault.message : String(fault);
-  if (code === 'SQLITE_FULL' || code === 'SQLITE_IOERR_WRITE' || code === 'ENOSPC')
+  if (FULL_CODES.has(code))
     return new StoreError(
       'FULL',
       `the store cannot write, its disk is full (${text}); make room on the disk`,

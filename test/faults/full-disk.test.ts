@@ -1,15 +1,20 @@
+import { execFileSync } from 'node:child_process';
+import { rmSync, statfsSync, writeFileSync } from 'node:fs';
+import { join } from 'node:path';
 import { afterEach, expect, it } from 'vitest';
 import { createProducer } from '../../server/commands/producer.ts';
 import { type RunningServer, startServer } from '../../server/gateway/server.ts';
 import { modelFromJson } from '../../server/model/modelFile.ts';
 import { openStore } from '../../server/store/openStore.ts';
+import type { StoreError } from '../../server/store/storeError.ts';
+import { createStoreThread } from '../../server/store/storeThread.ts';
 import { createWatch } from '../../server/watch/watch.ts';
 import type { ChannelState } from '../../shared-types/channel.ts';
 import type { FeedMessage } from '../../shared-types/feed.ts';
 import { api, connect, swing, swingModelJson, until } from '../server/gateway/harness.ts';
-import { temporaryFolder } from '../server/store/temporaryFolder.ts';
+import { frame, temporaryFolder } from '../server/store/temporaryFolder.ts';
 import { createListener } from './builtServer.ts';
-import { report } from './report.ts';
+import { missingAndTwice, report, WHOLE } from './report.ts';
 
 const servers: RunningServer[] = [];
 afterEach(async () => {
@@ -164,3 +169,67 @@ it('while the disk is full the page says so and warnings go on; with room again 
   expect(values).toEqual(swing(0, swingFrames * each));
   expect(new Set(logged)).toEqual(told);
 });
+
+/** A file system of its own, of so many KiB, where this may be had: Linux, as root, in the whole suite. */
+const mayMount = WHOLE && process.platform === 'linux' && process.getuid?.() === 0;
+function mounted(kibibytes: number): { place: string; leave: () => void } {
+  const place = temporaryFolder();
+  execFileSync('mount', ['-t', 'tmpfs', '-o', `size=${kibibytes}k`, 'tmpfs', place]);
+  return { place, leave: () => void execFileSync('umount', ['-l', place]) };
+}
+
+/** Fills a small file system three times over at different moments of a commit; frames acknowledged, and samples lost of them. */
+async function fillUp(kibibytes: number): Promise<{ acknowledged: number; lost: number }> {
+  const { place, leave } = mounted(kibibytes);
+  try {
+    const ballast = join(place, 'ballast');
+    writeFileSync(ballast, new Uint8Array(kibibytes * 256));
+    const store = openStore(join(place, 'data'), { commitEvery: 0.002 });
+    let seq = 0;
+    const send = async () => {
+      const values = Float64Array.from({ length: 500 }, (_, i) => seq * 500 + i);
+      await store.appendFrames([frame(seq, seq * 10, values)]);
+      seq++;
+    };
+    for (let refusals = 0; refusals < 3; )
+      await send().catch(({ code }: StoreError) => {
+        expect(code).toBe('FULL');
+        refusals++;
+      });
+    rmSync(ballast);
+    await send();
+    const { values } = await store.samplesFrom('A', 0, 1e7);
+    await store.close();
+    const { lost } = missingAndTwice(values, seq * 500);
+    expect(values).toEqual(Float64Array.from(values, (_, i) => i));
+    return { acknowledged: seq, lost };
+  } finally {
+    leave();
+  }
+}
+
+if (mayMount)
+  it('a small file system that fills up at any moment costs nothing that was acknowledged', async () => {
+    let [acknowledged, lost] = [0, 0];
+    for (let kibibytes = 600; kibibytes < 1800; kibibytes += 37) {
+      const cost = await fillUp(kibibytes);
+      acknowledged += cost.acknowledged;
+      lost += cost.lost;
+    }
+    report({ tried: 'a file system of 0.6 to 1.8 MB filled up, 33 sizes', acknowledged, lost, twice: 0 });
+    expect(lost).toBe(0);
+  });
+
+if (mayMount)
+  it('a store on a disk without a byte left says so when it is opened', async () => {
+    const { place, leave } = mounted(2000);
+    try {
+      const data = join(place, 'data');
+      await openStore(data, { commitEvery: 0.002 }).close();
+      const { bfree, bsize } = statfsSync(place);
+      writeFileSync(join(place, 'ballast'), new Uint8Array(bfree * bsize));
+      await expect(createStoreThread(data, { commitEvery: 0.002 })).rejects.toMatchObject({ code: 'FULL' });
+    } finally {
+      leave();
+    }
+  });
