@@ -9,11 +9,12 @@ import { cutRange } from '../recordings/cutRange.ts';
 import { pickChannel } from '../recordings/pickChannel.ts';
 import { readRecording } from '../recordings/readRecording.ts';
 import type { RecordedChannel, Recording } from '../recordings/recording.ts';
-import { chooseThreshold, judgePair } from '../rehearsal/search.ts';
-import { createRandom } from '../rigs/random.ts';
+import { chooseRule, scoreOfChoice } from '../rehearsal/modelRule.ts';
+import type { RehearsalTask } from '../rehearsal/task.ts';
 import { usualInterval } from '../signal/grid.ts';
 import { InputError } from '../signal/inputError.ts';
 import { leaveOut } from '../signal/leaveOut.ts';
+import { regimeRuleText } from '../watch/regimeRuleText.ts';
 import {
   numberOption,
   printJson,
@@ -214,41 +215,45 @@ function addRule(model: Model, training: Training, choice: RuleChoice): void {
     model.rule = watchRuleOf(choice, choice.threshold);
     return;
   }
-  const { recordings, series, channels, interval, gapIntervals, center } = training;
-  const extra = regimeChannelOf(model);
-  const withRegime = series.map((one, i) => {
-    if (extra === null || one.some(({ channel }) => channel === extra)) return one;
-    return [...one, pickChannel(recordings[i]!, extra)];
-  });
-  const chosen = chooseThreshold(model, withRegime, choice);
-  if (chosen === null) {
-    throw new InputError(
-      'NO_SWITCH',
-      'the recording holds no switch that could have been warned of, expected several to choose a threshold on; check --regime, record for longer, or give --threshold',
-    );
-  }
-  model.rule = chosen.rule;
-  const task = {
-    name: model.name,
-    channels,
-    recordings: withRegime,
-    interval,
-    gapIntervals,
-    center,
-    wishes: choice,
-  };
+  const task = ruleTask(model, training, choice);
+  model.rule = chooseRule(task, model);
   try {
-    const { uniform } = createRandom(1);
-    const found = judgePair(
-      { ...task, pairs: [], ceiling: null, tunePart: 0.5, uniform },
-      model.delays,
-      model.rank,
-    );
-    model.score = found.score;
+    model.score = scoreOfChoice(task, model);
   } catch (error) {
     // too little to put half of it aside: the model keeps its rule and has no score
     if (!(error instanceof InputError)) throw error;
   }
+}
+
+/** What is to be warned of in the recordings of the fit, as a rehearsal takes it. */
+function ruleTask(model: Model, training: Training, choice: RuleChoice): RehearsalTask {
+  const { recordings, series, channels, interval, gapIntervals } = training;
+  const extra = regimeChannelOf(model);
+  return {
+    request: {
+      ...choice,
+      recordings: recordings.map(({ name }) => name),
+      channels: channels.map(({ channel }) => channel),
+      regime: regimeRuleText(choice.regime),
+      variable: 'forcing',
+      ceiling: { falsePerHour: null, cameTrue: null },
+      delay: 0,
+      tunePart: 0.5,
+      seed: 1,
+      windows: null,
+      ranks: null,
+    },
+    recordings: recordings.map((recording, i) => {
+      const own = series[i]!;
+      const there = extra === null || own.some(({ channel }) => channel === extra);
+      const { name, sha256 } = recording;
+      return { name, sha256, series: there ? own : [...own, pickChannel(recording, extra)], leftOut: [] };
+    }),
+    program: programName(),
+    at: new Date().toISOString(),
+    interval,
+    gapIntervals,
+  };
 }
 
 function regimeChannelOf({ regime, regimeChannel }: Model): string | null {

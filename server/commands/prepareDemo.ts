@@ -2,18 +2,18 @@ import { createHash } from 'node:crypto';
 import { mkdir, readFile, writeFile } from 'node:fs/promises';
 import { join } from 'node:path';
 import type { Model } from '../../shared-types/model.ts';
+import { RehearsalRequest } from '../../shared-types/rehearsal.ts';
 import type { NewWatchToSend } from '../../shared-types/watch.ts';
 import { modelFromJson, modelToJson } from '../model/modelFile.ts';
 import { writeCsv } from '../recordings/csv.ts';
+import { chooseSettings } from '../rehearsal/chooseSettings.ts';
 import type { RecordedSeries } from '../rehearsal/playback.ts';
-import { chooseSettings } from '../rehearsal/search.ts';
-import { createRandom } from '../rigs/random.ts';
+
 import { createStand, STAND_INTERVAL, STAND_LOOPS } from '../rigs/stand.ts';
 import { programName } from './program.ts';
 
 /** Hours of training recording: the first half for choosing, the second judged. */
 const TRAINING_HOURS = 6;
-const TUNE_PART = 0.5;
 
 /** A person must be able to act: ten seconds at least. */
 const LEAST_LEAD = 10;
@@ -23,7 +23,8 @@ const HORIZON = 20;
 const REACTION = 5;
 
 /** Windows (in samples) and ranks that are tried: about an orbit's third to its whole. */
-const PAIRS = [14, 17, 20, 23, 26, 30, 34].flatMap((delays) => [2, 3].map((rank) => ({ delays, rank })));
+const DELAYS = [14, 17, 20, 23, 26, 30, 34];
+const RANKS = [2, 3];
 
 /** A switch is a change of sides by a tenth of the amplitude, about 0.3 K. */
 const SIDE_KELVIN = 0.3;
@@ -76,23 +77,8 @@ async function makeModel(channel: string, recording: string, file: string): Prom
   const series = trainingSeries(channel);
   const text = writeCsv({ name: recording, channels: [{ ...series, unit: 'K' }], sha256: '' });
   await writeFile(recording, text);
-  const model = fitDemo(series);
-  const { times } = series;
-  const fittedTo = times[0]! + TUNE_PART * (times.at(-1)! - times[0]!);
-  model.provenance = {
-    program: programName(),
-    fittedAt: new Date().toISOString(),
-    recordings: [
-      {
-        name: recording,
-        sha256: createHash('sha256').update(text).digest('hex'),
-        from: times[0]!,
-        to: fittedTo,
-        samples: times.filter((time) => time <= fittedTo).length,
-      },
-    ],
-  };
-  const json = modelToJson(model);
+  const sha256 = createHash('sha256').update(text).digest('hex');
+  const json = modelToJson(fitDemo(series, { name: recording, sha256 }));
   await writeFile(file, json);
   return json;
 }
@@ -107,29 +93,25 @@ export function trainingSeries(channel: string, hours = TRAINING_HOURS): Recorde
 }
 
 /** Chooses settings on the first half of a training recording and fits with them; scored on the second half. */
-export function fitDemo(series: RecordedSeries): Model {
+export function fitDemo(series: RecordedSeries, source = { name: series.channel, sha256: '' }): Model {
   const { channel } = series;
-  const { model } = chooseSettings({
-    name: `demo ${channel}`,
-    channels: [{ channel, unit: 'K' }],
-    recordings: [[series]],
-    interval: STAND_INTERVAL,
-    gapIntervals: 3,
-    center: 'mean',
-    wishes: {
-      regime: { kind: 'sides', low: -SIDE_KELVIN, high: SIDE_KELVIN },
-      regimeChannel: null,
+  const model = chooseSettings({
+    request: RehearsalRequest.parse({
+      recordings: [source.name],
+      channels: [channel],
+      regime: `sides:${-SIDE_KELVIN},${SIDE_KELVIN}`,
       leastLead: LEAST_LEAD,
       horizon: HORIZON,
-      threshold: null,
-      rearm: null,
-      onDelay: null,
-      holdOff: null,
-    },
-    ceiling: null,
-    pairs: PAIRS,
-    tunePart: TUNE_PART,
-    uniform: createRandom(`demo ${channel}`).uniform,
+      variable: 'forcing',
+      windows: DELAYS.map((delays) => delays * STAND_INTERVAL),
+      ranks: RANKS,
+      onDelay: 0,
+      holdOff: HORIZON - LEAST_LEAD,
+    }),
+    recordings: [{ ...source, series: [{ ...series, unit: 'K' }], leftOut: [] }],
+    program: programName(),
+    at: new Date().toISOString(),
+    interval: STAND_INTERVAL,
   });
-  return { ...model, switchWord: 'reversal' };
+  return { ...model, name: `demo ${channel}` };
 }

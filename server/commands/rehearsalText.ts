@@ -2,7 +2,7 @@ import type { Model } from '../../shared-types/model.ts';
 import type { Contender, RehearsalResult } from '../../shared-types/rehearsal.ts';
 import type { Interval, Score } from '../../shared-types/score.ts';
 import type { Rehearsal, RehearsedWarning } from '../rehearsal/rehearse.ts';
-import { counted, pluralOf } from '../rehearsal/words.ts';
+import { counted, inUnit, percent, pluralOf, rateUnitOf, short, spanWords } from '../rehearsal/words.ts';
 
 /** Below this a recording has elapsed time, not the time of a clock. */
 const CLOCK_TIME = 1e8;
@@ -99,11 +99,11 @@ function settingsLine({
   holdOff,
 }: RehearsalResult['settings']): string {
   const parts = [
-    `window ${Number(window.toPrecision(4))} s (${delays} delays)`,
+    `window ${spanWords(window)} (${delays} delays)`,
     `rank ${rank}`,
-    `re-arm ${Number(rearm.toPrecision(3))}`,
-    `on-delay ${Number(onDelay.toPrecision(3))} s`,
-    `hold-off ${Number(holdOff.toPrecision(3))} s`,
+    `re-arm ${short(rearm)}`,
+    `on-delay ${spanWords(onDelay)}`,
+    `hold-off ${spanWords(holdOff)}`,
   ];
   return `settings          ${parts.join(', ')}`;
 }
@@ -113,31 +113,42 @@ function contenderLines(contenders: readonly Contender[]): string[] {
     [
       name.padEnd(30),
       round(skill, 2).padStart(6),
-      percent(detection).padStart(7),
-      percent(cameTrue).padStart(8),
-      `  ${settings}`,
-    ].join(''),
+      percent(detection).padStart(9),
+      percent(cameTrue).padStart(11),
+      `   ${settings}`,
+    ]
+      .join('')
+      .trimEnd(),
   );
-  return [`${'variable or baseline'.padEnd(30)} skill warned % true %   set to`, ...rows];
+  return [`${'variable or baseline'.padEnd(30)} skill   warned  came true   set to`, ...rows];
 }
 
 function scoreLines(score: Score, word: string): string[] {
-  const { warnings, switches, lead } = score;
-  const leads = [lead.p10, lead.median, lead.p90].map((value) => round(value, 1)).join(' / ');
+  const { warnings, switches, lead, watchedSeconds, falsePerHour } = score;
+  const unit = rateUnitOf(watchedSeconds);
+  const rate = (perHour: number | null) => (perHour === null ? '–' : short(inUnit(perHour, unit)));
   return [
-    `judged            ${round(score.watchedSeconds / 3600, 2)} h with a full window`,
+    `judged            ${spanWords(watchedSeconds)} with a full window`,
     `${pluralOf(word).padEnd(17)} ${switches.total}: ${listed({ ...switches, total: 0 })}`,
     `warnings          ${warnings.total}: ${listed({ ...warnings, total: 0 })}`,
     `came true         ${shareOf(score.cameTrue)}`,
-    `false             ${shareOf(score.falseRatio)}; an hour ${round(score.falsePerHour.low, 1)} to ${round(score.falsePerHour.high, 1)}`,
-    `lead              ${leads} s (10 %, median, 90 %); a warner that knows nothing: ${round(lead.random, 1)} s`,
-    `skill             ${round(score.skill, 2)} above chance (${percent(score.tau)} % of the time in a span), p ${round(score.pValue, 3)}; ` +
+    `false             ${shareOf(score.falseRatio)}; ${rate(falsePerHour.value)} ${unit.words} (${rate(falsePerHour.low)} to ${rate(falsePerHour.high)})`,
+    ...leadLines(lead),
+    `skill             ${round(score.skill, 2)} above chance (${percent(score.tau)} of the time in a span), p ${round(score.pValue, 3)}; ` +
       shareWords(score),
   ];
 }
 
+function leadLines({ p10, median, p90, random }: Score['lead']): string[] {
+  if (p10 === null || median === null || p90 === null) return ['lead              no switch was warned of'];
+  const nothing = random === null ? '' : `; a warner that knows nothing: ${spanWords(random)}`;
+  return [
+    `lead              median ${spanWords(median)}, ${spanWords(p10)} to ${spanWords(p90)} (10 to 90 %)${nothing}`,
+  ];
+}
+
 function shareWords({ skill, skillShare }: Score): string {
-  if (skillShare !== null) return `${percent(skillShare)} % of what a perfect warner reaches`;
+  if (skillShare !== null) return `${percent(skillShare)} of what a perfect warner reaches`;
   if (skill === null) return 'nothing to compare with';
   return 'the horizon is too long for such frequent switches, even a perfect warner would have little skill';
 }
@@ -153,7 +164,7 @@ function warningLines(
   const rest = left === 0 ? '' : `, the last ${most} (--json has them all)`;
   const lines = [
     `${counted(warnings.length, 'warning')}${rest}:`,
-    'at                        value  outcome  lead    part',
+    'at                        value  outcome  lead     part',
   ];
   let recording = -1;
   for (const warning of shown) {
@@ -161,9 +172,9 @@ function warningLines(
       lines.push(recordings[warning.recording]!);
       recording = warning.recording;
     }
-    const lead = warning.lead === null ? '' : `${round(warning.lead, 2)} s`;
+    const lead = warning.lead === null ? '' : spanWords(warning.lead);
     lines.push(
-      `${timeText(warning.at).padEnd(24)} ${round(warning.value, 2).padStart(6)}  ${warning.outcome.padEnd(8)} ${lead.padEnd(7)} ${warning.part}`,
+      `${timeText(warning.at).padEnd(24)} ${round(warning.value, 2).padStart(6)}  ${warning.outcome.padEnd(8)} ${lead.padEnd(8)} ${warning.part}`,
     );
   }
   return lines;
@@ -175,12 +186,10 @@ const timeText = (time: number): string =>
 const round = (value: number | null, digits: number): string =>
   value === null ? '–' : value.toFixed(digits).replace(/^-(0\.?0*)$/, '$1');
 
-const percent = (value: number | null): string => (value === null ? '–' : (100 * value).toFixed(0));
-
 const shareOf = ({ value, low, high }: Interval): string =>
   value === null
     ? 'nothing counted'
-    : `${percent(value)} % (95 % interval ${percent(low)} to ${percent(high)} %)`;
+    : `${percent(value)} (95 % interval ${percent(low)} to ${percent(high)})`;
 
 function listed(counts: { [outcome: string]: number }): string {
   const parts = Object.entries(counts).filter(([, count]) => count > 0);

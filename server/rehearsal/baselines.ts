@@ -2,6 +2,7 @@ import { runningAutocorrelationInto, runningVarianceInto } from '../signal/slidi
 import type { GriddedRecording, GriddedRun } from './gridded.ts';
 import { bothDirections, type Signal } from './signal.ts';
 import { type Places, type Trace, withSummary } from './trace.ts';
+import { spanWords } from './words.ts';
 
 /** What the baselines' few settings are chosen around. */
 export interface BaselineScales {
@@ -64,7 +65,7 @@ function familiesOf(
   const pairs = windows.map((window) =>
     bothDirections(
       name,
-      windows.length > 1 ? `over ${Number((window * interval).toPrecision(3))} s` : '',
+      windows.length > 1 ? `over ${spanWords(window * interval)}` : '',
       (recording, places) => perRun(recording, places, (run) => of(run, window)),
     ),
   );
@@ -131,7 +132,7 @@ function clocks({ interval, room, between }: BaselineScales): Family {
 function clock(period: number, phase: number): Signal {
   return {
     name: 'a clock',
-    setting: `every ${Number(period.toPrecision(3))} s`,
+    setting: `every ${spanWords(period)}`,
     variable: 'level',
     direction: 'rising',
     quietIsZero: true,

@@ -9,6 +9,7 @@ import { type GriddedRecording, gridRecording, regimeChannelOf, seriesOf } from 
 import { leftOutSeries } from './leftOut.ts';
 import { judgedFromTimes, scoredFromTime } from './parts.ts';
 import type { RehearsalTask, TaskSeries } from './task.ts';
+import { allOf, short, spanWords } from './words.ts';
 
 /** A rehearsal's recordings on their grid, parted into what may be chosen on and what is judged. */
 export interface Prepared {
@@ -109,7 +110,7 @@ function checkSpans({ leastLead, horizon }: RehearsalRequest, spans: GradingSpan
   if (spans.horizon > spans.leastLead) return;
   throw new InputError(
     'SPANS',
-    `the least lead (${leastLead} s) is not shorter than the horizon (${horizon} s) by at least one interval (${spans.interval} s), so no warning could ever come true; lengthen the horizon or shorten the least lead`,
+    `the least lead (${spanWords(leastLead)}) is not shorter than the horizon (${spanWords(horizon)}) by at least one interval (${spanWords(spans.interval)}), so no warning could ever come true; lengthen the horizon or shorten the least lead`,
   );
 }
 
@@ -132,7 +133,7 @@ function checkWindows(
     if (longest >= delays) return;
     throw new InputError(
       'NO_FULL_WINDOW',
-      `the recording ${recordings[i]!.name} has no full window: its longest stretch without a gap is ${longest} samples, expected at least ${delays} (${Number((delays * interval).toPrecision(3))} s); leave it out, record without gaps, or take a shorter window`,
+      `the recording ${recordings[i]!.name} has no full window: its longest stretch without a gap is ${longest} samples, expected at least ${delays} (${spanWords(delays * interval)}); leave it out, record without gaps, or take a shorter window`,
     );
   });
 }
@@ -155,7 +156,7 @@ function checkSwitches(
   if (tuned === 0) {
     throw new InputError(
       'NO_SWITCH_TO_TUNE',
-      `no switch lies in the tuning part (${total === 1 ? 'the only one comes' : `all ${total} come`} later), expected several to choose settings by; raise --tune-part or give longer recordings`,
+      `${allOf(total, 'switch')} ${lie(total)} after the tuning part, so none lies in the tuning part, expected several to choose settings by; raise --tune-part or give longer recordings`,
     );
   }
   const judged = recordings.reduce(
@@ -166,10 +167,12 @@ function checkSwitches(
   if (judged === 0) {
     throw new InputError(
       'NO_SWITCH_TO_JUDGE',
-      `all ${total} switches lie in the tuning part or within a horizon after it, so none is left to judge, expected at least 10; lower --tune-part or give longer recordings`,
+      `${allOf(total, 'switch')} ${lie(total)} in the tuning part or within a horizon after it, so none is left to judge, expected at least 10; lower --tune-part or give longer recordings`,
     );
   }
 }
+
+const lie = (count: number): string => (count === 1 ? 'lies' : 'lie');
 
 function rangeWords({ request, recordings }: RehearsalTask): string {
   const channel = regimeChannelOf(readRegime(request.regime), request.regimeChannel, request.channels);
@@ -182,5 +185,5 @@ function rangeWords({ request, recordings }: RehearsalTask): string {
     }
   }
   if (!(low <= high)) return '';
-  return ` (${channel} lies between ${Number(low.toPrecision(4))} and ${Number(high.toPrecision(4))})`;
+  return ` (${channel} lies between ${short(low)} and ${short(high)})`;
 }

@@ -4,21 +4,21 @@ import { modelToJson } from '../model/modelFile.ts';
 import { InputError } from '../signal/inputError.ts';
 import { createRandom } from '../signal/random.ts';
 import { tuneBaselines } from './baselineContenders.ts';
+import { modelOf } from './chooseSettings.ts';
 import { compactOf, perfectOf, scoreChosen, tableOf } from './chosenTable.ts';
-import { foldStarts } from './folds.ts';
 import { judgeTuned, type Verdictable } from './judge.ts';
 import { perfectSkill } from './perfect.ts';
 import { type Prepared, prepareTask } from './prepare.ts';
-import { overlapsJudged, provenanceOf } from './provenance.ts';
-import { contenderOf, rivalOf, sentenceOf, watchedWords } from './rehearsalWords.ts';
-import { givenModel, type Settled, searchSettings } from './settle.ts';
+import { overlapsJudged } from './provenance.ts';
+import { contenderOf, sentenceOf, watchedWords } from './rehearsalWords.ts';
+import { highest, leftOutByCeiling, rivalOf } from './rival.ts';
+import { givenModel, type Settled, searchSettings, tuningGround } from './settle.ts';
 import type { RehearsalTask } from './task.ts';
-import type { Ceiling } from './threshold.ts';
 import { traceOf } from './trace.ts';
 import { createGround, freeGround, type Ground, type Tuned, triedOn } from './tune.ts';
 import { levelSignals } from './variables.ts';
 import { verdictOf } from './verdict.ts';
-import { switchWordOf } from './words.ts';
+import { spanWords } from './words.ts';
 
 export type { RehearsalTask, TaskRecording, TaskSeries } from './task.ts';
 
@@ -39,7 +39,7 @@ export function runRehearsal(task: RehearsalTask, progress: Progress = () => {})
   checkOverlap(prepared, ground);
   const searched =
     task.model == null
-      ? searchSettings(task, prepared, ground, runs, within(progress, 0.05, 0.6))
+      ? searchSettings(task, prepared, ground, runs, { beside: true, progress: within(progress, 0.05, 0.6) })
       : givenModel(task.model, ground);
   const baselines = tuneBaselines(prepared, freeGround(ground), runs, within(progress, 0.6, 0.75));
   progress(0.75, 'judging the variables and the baselines');
@@ -48,17 +48,6 @@ export function runRehearsal(task: RehearsalTask, progress: Progress = () => {})
 
 function within(progress: Progress, from: number, to: number): Progress {
   return (done, doing) => progress(from + done * (to - from), doing);
-}
-
-function tuningGround({ request }: RehearsalTask, { tuning, spans }: Prepared): Ground {
-  const { falsePerHour, cameTrue } = request.ceiling;
-  const ceiling: Ceiling | null = falsePerHour === null && cameTrue === null ? null : request.ceiling;
-  return createGround(
-    tuning,
-    foldStarts(tuning),
-    tuning.map(({ start }) => start),
-    { spans, asked: request, ceiling },
-  );
 }
 
 /** Below this skill of a perfect warner every span covers some switch. */
@@ -73,7 +62,7 @@ function checkOverlap({ spans, regime }: Prepared, ground: Ground): void {
   const { horizon, interval } = spans;
   throw new InputError(
     'EVENTS_OVERLAP',
-    `the ${regime.kind} rule finds switches so close together that the spans of their warnings overlap all the time (horizon ${Number((horizon * interval).toPrecision(4))} s), expected a horizon shorter than the usual time between switches; shorten the horizon, or choose a rule with fewer switches`,
+    `the ${regime.kind} rule finds switches so close together that the spans of their warnings overlap all the time (horizon ${spanWords(horizon * interval)}), expected a horizon shorter than the usual time between switches; shorten the horizon, or choose a rule with fewer switches`,
   );
 }
 
@@ -94,9 +83,8 @@ function judgeAndReport(
   progress: Progress,
 ): RehearsalResult {
   const { request } = task;
-  const { recordings, judgedFrom, regime, regimeChannel } = prepared;
+  const { recordings, judgedFrom } = prepared;
   const { chosen, rule } = settled;
-  const word = settled.model.switchWord === 'switch' ? switchWordOf(regime) : settled.model.switchWord;
   const judgedGround = judgingGround(prepared, ground);
   const judged = [chosen, ...settled.others, ...baselines].map((one, i, { length }) => {
     progress((0.6 * i) / length, `judging: ${one.signal.name}`);
@@ -107,14 +95,12 @@ function judgeAndReport(
   progress(0.65, 'the table of operating points');
   const { table, chosenRow, plainRow } = tableOf(task, prepared, ground, settled, traces);
   table.rows[chosenRow]!.score = score;
+  const model: Model = { ...modelOf(task, prepared, settled, score), operating: compactOf(table) };
+  const word = model.switchWord;
   const unit = prepared.channels[0]!.unit;
-  const rival = rivalOf(
-    judged[0]!,
-    judged.slice(1).filter((one) => one.tuned.signal.name !== 'forcing'),
-    ground.ceiling !== null,
-    createRandom(request.seed + 1).uniform,
-  );
-  const provenance = provenanceOf(task, prepared);
+  const plainOnes = judged.slice(1).filter((one) => one.tuned.signal.name !== 'forcing');
+  const { uniform } = createRandom(request.seed + 1);
+  const rival = rivalOf(judged[0]!, plainOnes, request.ceiling, uniform);
   const fittedOnJudged = task.model != null && overlapsJudged(task.model, task, prepared);
   const watchedHours =
     recordings.reduce((sum, { start, end }) => sum + end - start + prepared.interval, 0) / 3600;
@@ -123,6 +109,8 @@ function judgeAndReport(
     variable: chosen.signal.name,
     ceiling: request.ceiling,
     rival: rival === null ? null : { name: rival.judged.tuned.signal.name, ...rival.difference },
+    level: namedSkill(highest(plainOnes.filter(isLevel))),
+    outside: namedSkill(leftOutByCeiling(judged[0]!, plainOnes, request.ceiling)),
     fittedOnJudged,
     perfect: perfectOf(prepared, traces),
     levelChosenFreely: request.variable === 'best' && task.model == null,
@@ -130,20 +118,10 @@ function judgeAndReport(
     perHour: recordings.reduce((sum, { switches }) => sum + switches.length, 0) / watchedHours,
     judgedShare: score.watchedSeconds / 3600 / watchedHours,
   });
-  const model: Model = {
-    ...settled.model,
-    rule,
-    regime,
-    regimeChannel,
-    switchWord: word,
-    score,
-    provenance: task.model?.provenance ?? provenance,
-    operating: compactOf(table),
-  };
   progress(1, 'done');
   return {
     request,
-    sentence: sentenceOf(watchedWords(chosen, unit), score, word, rival?.judged ?? null),
+    sentence: sentenceOf(watchedWords(chosen, unit), score, word, rival?.judged ?? null, request.delay),
     verdict,
     settings: {
       ...rule,
@@ -186,6 +164,11 @@ function judgeAndReport(
     at: task.at,
   };
 }
+
+const isLevel = ({ tuned }: Verdictable): boolean => tuned.signal.name.startsWith('level ');
+
+const namedSkill = (one: Verdictable | null) =>
+  one === null ? null : { name: one.tuned.signal.name, skill: one.point!.skill };
 
 /** The forcing and the levels are variables where they were up for choice; the level is a baseline as well. */
 function isVariable({ tuned }: Verdictable, chosen: Tuned, asked: string): boolean {

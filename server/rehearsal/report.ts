@@ -1,8 +1,9 @@
 import type { RehearsalResult } from '../../shared-types/rehearsal.ts';
 import { leadHistogram, settingsMap, tradeOff } from './report/figures.ts';
-import { figure, type Html, html, percentWords, secondsWords, shortWords } from './report/html.ts';
+import { figure, type Html, html, percentWords, shortWords, spanWords } from './report/html.ts';
 import { REPORT_STYLE } from './report/style.ts';
-import { contenderTable, provenanceTable, scoreTable, settingsTable } from './report/tables.ts';
+import { contenderTable, provenanceTable, rateIn, scoreTable, settingsTable } from './report/tables.ts';
+import { rateUnitOf } from './words.ts';
 
 /**
  * A rehearsal as one HTML document that needs nothing else: no network, no script. It reads on a screen and prints on
@@ -48,12 +49,14 @@ const verdictWords = ({ verdict }: RehearsalResult): string =>
 function headline({ score }: RehearsalResult): Html {
   const range = (low: number | null, high: number | null, words: (value: number) => string) =>
     low === null || high === null ? null : html`<small>95 %: ${words(low)} to ${words(high)}</small>`;
-  const { detection, cameTrue, falsePerHour, lead, skill, switches } = score;
+  const { detection, cameTrue, lead, skill, switches } = score;
+  const unit = rateUnitOf(score.watchedSeconds);
+  const falseRate = rateIn(score.falsePerHour, unit);
   return html`<dl class="figures">
 <div><dt>switches warned</dt><dd>${figure(switches.warned, String)} of ${figure(switches.total - switches.blind, String)}${range(detection.low, detection.high, percentWords)}</dd></div>
 <div><dt>came true</dt><dd>${figure(cameTrue.value, percentWords)}${range(cameTrue.low, cameTrue.high, percentWords)}</dd></div>
-<div><dt>false an hour</dt><dd>${figure(falsePerHour.value, shortWords)}${range(falsePerHour.low, falsePerHour.high, shortWords)}</dd></div>
-<div><dt>median lead</dt><dd>${figure(lead.median, secondsWords)}${lead.p10 === null || lead.p90 === null ? null : html`<small>most: ${secondsWords(lead.p10)} to ${secondsWords(lead.p90)}</small>`}</dd></div>
+<div><dt>false ${unit.words}</dt><dd>${figure(falseRate.value, shortWords)}${range(falseRate.low, falseRate.high, shortWords)}</dd></div>
+<div><dt>median lead</dt><dd>${figure(lead.median, spanWords)}${lead.p10 === null || lead.p90 === null ? null : html`<small>8 of 10: ${spanWords(lead.p10)} to ${spanWords(lead.p90)}</small>`}</dd></div>
 <div><dt>skill</dt><dd>${figure(skill, shortWords)}<small>0: knows nothing</small></dd></div>
 </dl>`;
 }

@@ -1,17 +1,27 @@
 import type { Model } from '../../shared-types/model.ts';
 import type { WatchRule } from '../../shared-types/watch.ts';
 import { fitModel } from '../model/fit.ts';
-import { InputError } from '../signal/inputError.ts';
+import { foldStarts } from './folds.ts';
 import type { Manner } from './manner.ts';
 import type { Prepared } from './prepare.ts';
 import type { RehearsalTask } from './task.ts';
 import { choosePoint } from './threshold.ts';
 import { delaysToTry } from './toTry.ts';
-import { freeGround, type Ground, PLAIN, sweep, type Tuned, thresholdsOf, triedOn } from './tune.ts';
+import {
+  createGround,
+  freeGround,
+  type Ground,
+  PLAIN,
+  sweep,
+  type Tuned,
+  thresholdsOf,
+  triedOn,
+} from './tune.ts';
 import {
   chooseVariable,
   forcingSignal,
   levelSignals,
+  nothingToWarnOf,
   type SearchedVariables,
   searchVariables,
   type TunedVariable,
@@ -36,19 +46,27 @@ export interface Settled {
   tried: number;
 }
 
+/** How a search is made. */
+export interface SearchManner {
+  /** tune the plain levels as well where only the forcing was asked for: to stand beside it */
+  beside: boolean;
+  progress: (done: number, doing: string) => void;
+}
+
 /** Searches settings on the tuning part and fits the chosen window and rank to all of it. */
 export function searchSettings(
   task: RehearsalTask,
   prepared: Prepared,
   ground: Ground,
   runs: readonly (readonly Float64Array[])[],
-  progress: (done: number, doing: string) => void,
+  { beside, progress }: SearchManner,
 ): Settled {
   const { request } = task;
   const delays = delaysToTry(runs, request, prepared.spans.horizon, prepared.interval);
   const levelDelays = request.windows === null ? LEVEL_DELAYS : Math.min(...delays);
   const level = fitTo(prepared, runs, levelDelays, LEVEL_RANK);
-  const searched = searchVariables(ground, runs, request, delays, level, progress);
+  const levels = beside || request.variable !== 'forcing' ? level : null;
+  const searched = searchVariables(ground, runs, request, delays, levels, progress);
   const chosen = chooseVariable(searched, request.variable, ground.ceiling);
   progress(0.97, 'fitting the chosen window and rank');
   const model = chosen.signal.name === 'forcing' ? fitTo(prepared, runs, chosen.delays, chosen.rank) : level;
@@ -68,15 +86,29 @@ export function searchSettings(
   };
 }
 
-function fitTo(
+/** The tuning part in folds, as what a search tries settings on. */
+export function tuningGround({ request }: RehearsalTask, { tuning, spans }: Prepared): Ground {
+  const { falsePerHour, cameTrue } = request.ceiling;
+  const ceiling = falsePerHour === null && cameTrue === null ? null : request.ceiling;
+  return createGround(
+    tuning,
+    foldStarts(tuning),
+    tuning.map(({ start }) => start),
+    { spans, asked: request, ceiling },
+  );
+}
+
+/** Fits one window and rank to runs[i][c]; those shorter than the window are left out. */
+export function fitTo(
   { interval, gapIntervals, channels }: Prepared,
   runs: readonly (readonly Float64Array[])[],
   delays: number,
   rank: number,
+  center: 'mean' | 'none' = 'mean',
 ): Model {
   const long = runs.filter((run) => run[0]!.length >= delays);
   const name = channels.map(({ channel }) => channel).join(', ');
-  return fitModel(long, interval, { name, channels, delays, rank, center: 'mean', gapIntervals });
+  return fitModel(long, interval, { name, channels, delays, rank, center, gapIntervals });
 }
 
 /** The threshold of the chosen setting, on the model as it was fitted to all of the tuning part. */
@@ -110,12 +142,7 @@ export function givenModel(model: Model, ground: Ground): Settled {
   const tried = triedOn(ground, signal);
   const given = { ...signal, thresholds: [rule.threshold] };
   const best = choosePoint(sweep(ground, tried, given, manner, given.thresholds), ground.ceiling);
-  if (best === null) {
-    throw new InputError(
-      'NOTHING_TO_WARN_OF',
-      'no switch of the tuning part could have been warned of; give longer recordings, another rule for the switch, or a longer horizon',
-    );
-  }
+  if (best === null) throw nothingToWarnOf();
   const point = { ...best.point, rule };
   const { delays, rank } = model;
   const plain = { merit: point, point };

@@ -1,5 +1,5 @@
-import type { Variable, WatchRule } from '../../shared-types/watch.ts';
-import { type SteppedRule, steppedRule, watchRuleWithDefaults } from '../watch/watchRule.ts';
+import type { WatchRule } from '../../shared-types/watch.ts';
+import type { SteppedRule } from '../watch/watchRule.ts';
 import {
   addTally,
   cameTrueOf,
@@ -12,16 +12,6 @@ import {
   warningsOf,
 } from './tally.ts';
 import { type Trace, warningsInto } from './trace.ts';
-
-/** Rule options as a person gives them; null: by default or from the data. Spans in seconds. */
-export interface RuleWishes {
-  leastLead: number;
-  horizon: number;
-  threshold: number | null;
-  rearm: number | null;
-  onDelay: number | null;
-  holdOff: number | null;
-}
 
 /** What a person agreed to; null: no ceiling of this kind. */
 export interface Ceiling {
@@ -101,15 +91,6 @@ export function spreadThresholds(tried: readonly Tried[], sign: 1 | -1, count = 
   return [...thresholds];
 }
 
-/**
- * Tries one rule on stretches of grid steps.
- *
- * @returns null where no switch counts
- */
-export function tryRule(tried: readonly Tried[], rule: WatchRule, interval: number): OperatingPoint | null {
-  return tryWarner(tried, warnerOf(steppedRule(rule, interval)), rule, interval);
-}
-
 /** The warner that steps a rule over a trace. */
 export function warnerOf(stepped: SteppedRule): Warner {
   return ({ trace, steps, warnings }) => {
@@ -175,44 +156,6 @@ export function pointOf(
     cameTrue: cameTrueOf(tally),
     falsePerHour: tally.watched === 0 ? 0 : tally.warnings.false / ((tally.watched * interval) / 3600),
   };
-}
-
-/**
- * All operating points of a sweep of thresholds over a variable; a threshold that was wished for is the only one.
- *
- * @throws RangeError when the wishes contradict themselves
- */
-export function sweepThresholds(
-  tried: readonly Tried[],
-  wishes: RuleWishes,
-  interval: number,
-  variable: Variable = 'forcing',
-  direction: 'rising' | 'falling' = 'rising',
-): OperatingPoint[] {
-  const thresholds =
-    wishes.threshold === null ? spreadThresholds(tried, direction === 'rising' ? 1 : -1) : [wishes.threshold];
-  return thresholds
-    .map((threshold) => tryRule(tried, ruleOfWishes(wishes, threshold, variable, direction), interval))
-    .filter((point) => point !== null);
-}
-
-/** The watch rule of wishes with a threshold; what was not wished for is by default. */
-export function ruleOfWishes(
-  wishes: RuleWishes,
-  threshold: number,
-  variable: Variable = 'forcing',
-  direction: 'rising' | 'falling' = 'rising',
-): WatchRule {
-  return watchRuleWithDefaults({
-    variable,
-    direction,
-    threshold,
-    leastLead: wishes.leastLead,
-    horizon: wishes.horizon,
-    ...(wishes.rearm === null ? {} : { rearm: wishes.rearm }),
-    ...(wishes.onDelay === null ? {} : { onDelay: wishes.onDelay }),
-    ...(wishes.holdOff === null ? {} : { holdOff: wishes.holdOff }),
-  });
 }
 
 /** A chosen point; weak: none was within the ceiling (without one: with half of the warnings coming true). */

@@ -1,6 +1,7 @@
 import type { RehearsalRequest } from '../../shared-types/rehearsal.ts';
 import { chooseDelays } from '../embedding/windowChoice.ts';
 import { InputError } from '../signal/inputError.ts';
+import { spanWords } from './words.ts';
 
 /** Windows on the ladder; delays of all channels together in the longest one chosen by itself. */
 const WINDOWS = 12;
@@ -30,7 +31,7 @@ export function delaysToTry(
     const shortest = Math.min(...wanted) * interval;
     throw new InputError(
       'NO_FULL_WINDOW',
-      `the longest unbroken stretch for tuning is ${(longest * interval).toPrecision(3)} s, too short for a window of ${shortest.toPrecision(3)} s (${Math.min(...wanted)} samples), expected at least four windows and two samples a window; record for longer without gaps, or change the windows`,
+      `the longest unbroken stretch for tuning is ${spanWords(longest * interval)}, too short for a window of ${spanWords(shortest)} (${Math.min(...wanted)} samples), expected at least four windows and two samples a window; record for longer without gaps, or change the windows`,
     );
   }
   return [...new Set(fitting)].sort((a, b) => a - b);

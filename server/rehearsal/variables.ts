@@ -15,6 +15,7 @@ import {
   triedOn,
   tune,
 } from './tune.ts';
+import { spanWords } from './words.ts';
 
 /** A tuned variable with the window and rank that it is made of. */
 export interface TunedVariable extends Tuned {
@@ -45,14 +46,14 @@ const LONG = 500_000;
  *
  * @param runs   runs[i][c] of the tuning part, for the singular vectors
  * @param delays windows to try
- * @param level  a model with a short window, for its level
+ * @param level  a model with a short window, for its level; null: only the forcing is searched
  */
 export function searchVariables(
   ground: Ground,
   runs: readonly (readonly Float64Array[])[],
   request: RehearsalRequest,
   delays: readonly number[],
-  level: Projected,
+  level: Projected | null,
   progress: (share: number, doing: string) => void,
 ): SearchedVariables {
   const { ceiling, spans } = ground;
@@ -61,8 +62,10 @@ export function searchVariables(
   const forcings: Forcing[] = [];
   const wanted = request.variable === 'level' ? [] : delays;
   wanted.forEach((window, w) => {
-    const seconds = Number((window * spans.interval).toPrecision(3));
-    progress((0.8 * w) / wanted.length, `windows of ${seconds} s (${w + 1} of ${wanted.length})`);
+    progress(
+      (0.8 * w) / wanted.length,
+      `windows of ${spanWords(window * spans.interval)} (${w + 1} of ${wanted.length})`,
+    );
     for (const forcing of forcingsOf(runs, window, request)) {
       forcings.push(forcing);
       const signal = forcingSignal(forcing.projected);
@@ -81,15 +84,16 @@ export function searchVariables(
     return [pair, ...found.tuned.map((one) => shifted({ ...raw, ...one }, raw, pair))];
   });
   progress(0.95, 'plain levels');
-  const { levels, rules } =
-    request.variable === 'level'
-      ? tuneLevels(ground, level, request.threshold)
-      : tuneLevels(freeGround(ground), level, null);
+  const { levels, rules } = level === null ? { levels: [], rules: 0 } : levelsAsked(ground, level, request);
   tried += rules;
   const forcing = bestTuned(refined, ceiling);
   const all = [...bestOfPairs(evened, refined, ceiling), ...levels];
   return { forcing, levels, pairs: all.map((one) => toTriedSetting(one, spans.interval)), tried };
 }
+
+/** The levels, with what was held fixed only where they alone were asked for: it was meant for their scale. */
+const levelsAsked = (ground: Ground, level: Projected, { variable, threshold }: RehearsalRequest) =>
+  variable === 'level' ? tuneLevels(ground, level, threshold) : tuneLevels(freeGround(ground), level, null);
 
 /** The variable that a model's last coordinate is. */
 export function forcingSignal(model: Projected): Signal {
@@ -236,8 +240,12 @@ export function chooseVariable(
   );
   const chosen = eligible.find(({ merit }) => merit === best?.point);
   if (chosen !== undefined) return chosen;
-  throw new InputError(
-    'NOTHING_TO_WARN_OF',
-    'no switch on the tuning part could have been warned of; give longer recordings, another rule for the switch, or a longer horizon',
-  );
+  throw nothingToWarnOf();
 }
+
+/** The fault NOTHING_TO_WARN_OF: every switch of the tuning part is blind. */
+export const nothingToWarnOf = (): InputError =>
+  new InputError(
+    'NOTHING_TO_WARN_OF',
+    'no switch of the tuning part could have been warned of (no full window lies before it in time); give longer recordings with fewer gaps, another rule for the switch, or a longer horizon',
+  );

@@ -1,7 +1,7 @@
 import type { Ceiling, Verdict } from '../../shared-types/rehearsal.ts';
 import type { Score } from '../../shared-types/score.ts';
 import { LEAST_PERFECT_SKILL } from './perfect.ts';
-import { counted, percent, pluralOf, short, spanWords } from './words.ts';
+import { counted, falseRateWords, inUnit, percent, pluralOf, rateUnitOf, short, spanWords } from './words.ts';
 
 /** Fewer judged switches than this say too little. */
 export const FEWEST_EVENTS = 10;
@@ -15,8 +15,12 @@ export interface VerdictTask {
   /** what was chosen: "forcing", "level rising" */
   variable: string;
   ceiling: Ceiling;
-  /** the best baseline and our skill less its, with the 95 % interval; null: none that keeps within the ceiling */
+  /** the best baseline and our skill less its, with the 95 % interval; null: none could be judged */
   rival: { name: string; skill: number; value: number; low: number; high: number } | null;
+  /** the best plain level beside what was chosen: of the baselines only a level can be watched */
+  level: { name: string; skill: number } | null;
+  /** a baseline with more skill that does not keep within the ceiling */
+  outside: { name: string; skill: number } | null;
   /** the model was fitted on what is judged */
   fittedOnJudged: boolean;
   /** a level could have been passed over for the forcing */
@@ -59,10 +63,9 @@ function firstThatApplies(task: VerdictTask): Verdict {
     );
   }
   if (rival !== null && rival.low <= 0) {
-    const plain = task.variable.startsWith('level') ? 'the plain level chosen here' : `the ${task.variable}`;
     return verdict(
       'no better than',
-      `No better than ${rival.name}: its skill is ${short(rival.skill)}, that of ${plain} ${short(skill!)}; difference ${short(rival.value)}, 95 % interval ${short(rival.low)} to ${short(rival.high)} on ${counted(total, word)}.${rival.name.startsWith('level') ? ' A plain level can be watched instead.' : ''}`,
+      `${noBetterWords(task, rival, total)} ${adviceWords(task, rival)}`,
       rival.name,
     );
   }
@@ -70,6 +73,36 @@ function firstThatApplies(task: VerdictTask): Verdict {
   if (fault !== null) return verdict('weak', `Weak: ${fault}; skill ${short(skill!)}, p ${short(pValue)}.`);
   return verdict('useful', usefulWords(task));
 }
+
+type Rival = NonNullable<VerdictTask['rival']>;
+
+const isLevel = (name: string): boolean => name.startsWith('level ');
+
+function noBetterWords({ score, variable, word }: VerdictTask, rival: Rival, total: number): string {
+  const ours = isLevel(variable) ? `the ${variable}, chosen here,` : `the ${variable}`;
+  return `No better than ${rival.name}: its skill is ${short(rival.skill)}, that of ${ours} ${short(score.skill!)}; difference ${short(rival.value)}, 95 % interval ${short(rival.low)} to ${short(rival.high)} on ${counted(total, word)}.`;
+}
+
+/** What to do when a baseline is as good: of baselines a watch can have the level only. */
+function adviceWords({ variable, score, level }: VerdictTask, rival: Rival): string {
+  if (isLevel(variable)) {
+    if (isLevel(rival.name) || rival.high >= 0) {
+      return 'Both are plain readings of the channel: the level chosen here can be watched as it is.';
+    }
+    return `The level chosen here is a plain reading too, and can be watched as it is; a limit on ${plainName(rival.name)}, set where the channel is read, would warn better.`;
+  }
+  if (isLevel(rival.name)) {
+    return 'Watch the level then: rehearse again with a plain level as what to watch (--variable level).';
+  }
+  const limit = `A watch cannot be set on ${plainName(rival.name)}`;
+  if (level !== null && level.skill >= score.skill!) {
+    return `${limit}, but on the ${level.name}, whose skill is ${short(level.skill)}: rehearse again with a plain level as what to watch (--variable level).`;
+  }
+  return `${limit}: read it off the channel itself, or watch the ${variable} for the skill it has.`;
+}
+
+/** "distance from the mean" of "distance from the mean rising". */
+const plainName = (name: string): string => name.replace(/ (rising|falling)$/, '');
 
 function tooFewWords({ perHour, judgedShare, word }: VerdictTask, total: number): string {
   const rate = perHour * judgedShare;
@@ -81,27 +114,32 @@ function tooFewWords({ perHour, judgedShare, word }: VerdictTask, total: number)
 
 /** Why a watch with skill is still not called useful; null: nothing. */
 function faultOf({ score, ceiling, fittedOnJudged }: VerdictTask): string | null {
+  const { watchedSeconds } = score;
   const cameTrue = score.cameTrue.value ?? 0;
   const falsePerHour = score.falsePerHour.value ?? 0;
   if (fittedOnJudged) return 'the model was fitted on data judged here, so this says nothing about new data';
   if (ceiling.falsePerHour !== null && falsePerHour > ceiling.falsePerHour)
-    return `${short(falsePerHour)} false warnings an hour, outside the ceiling of ${short(ceiling.falsePerHour)}`;
+    return `${falseRateWords(falsePerHour, watchedSeconds)}, outside the ceiling of ${short(inUnit(ceiling.falsePerHour, rateUnitOf(watchedSeconds)))}`;
   if (ceiling.cameTrue !== null && cameTrue < ceiling.cameTrue)
     return `only ${percent(cameTrue)} of the warnings came true, outside the ceiling of ${percent(ceiling.cameTrue)}`;
   if (cameTrue < 0.5) return `only ${percent(cameTrue)} of the warnings came true, fewer than half`;
   return null;
 }
 
-function usefulWords({ score, variable, rival, levelChosenFreely }: VerdictTask): string {
+function usefulWords({ score, variable, rival, outside, levelChosenFreely }: VerdictTask): string {
   const { skill, cameTrue, pValue, skillShare } = score;
   const share = skillShare === null ? '' : ` (${percent(skillShare)} of what a perfect warner reaches)`;
   const beaten =
     rival === null
-      ? 'no other baseline keeps within what was asked for'
+      ? 'no baseline could be judged beside it'
       : `${short(rival.value)} more than ${rival.name}, 95 % interval ${short(rival.low)} to ${short(rival.high)}`;
+  const beyond =
+    outside === null
+      ? ''
+      : ` (${outside.name} has more, ${short(outside.skill)}, but does not keep within what was asked for.)`;
   const plain =
-    levelChosenFreely && variable.startsWith('level')
+    levelChosenFreely && isLevel(variable)
       ? ' A plain level is the answer: nothing made of the delay window does better.'
       : '';
-  return `Useful: skill ${short(skill!)}${share}, ${beaten}; ${percent(cameTrue.value)} of the warnings came true, p ${short(pValue!)}.${plain}`;
+  return `Useful: skill ${short(skill!)}${share}, ${beaten}; ${percent(cameTrue.value)} of the warnings came true, p ${short(pValue!)}.${beyond}${plain}`;
 }

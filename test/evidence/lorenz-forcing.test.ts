@@ -16,6 +16,6 @@ describe.each(CASES)('forcing on noisy Lorenz data, least lead $leastLead, horiz
   });
 
   it('knows more than chance for every seed', () => {
-    for (const { chosen } of rows) expect(chosen.score.pValue).toBeLessThan(0.01);
+    for (const { chosen } of rows) expect(chosen.score!.pValue).toBeLessThan(0.01);
   });
 });

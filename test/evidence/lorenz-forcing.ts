@@ -2,9 +2,11 @@
  * How early and how well the forcing warns on noisy Lorenz data, with window, rank and threshold chosen on the first
  * half of each recording and scored on the second.
  */
-import { chooseSettings, type Found, judgePair, type SearchTask } from '../../server/rehearsal/search.ts';
+import { chooseSettings } from '../../server/rehearsal/chooseSettings.ts';
 import { lorenzSeries } from '../../server/rigs/lorenz.ts';
 import { createRandom } from '../../server/rigs/random.ts';
+import type { Model } from '../../shared-types/model.ts';
+import { RehearsalRequest } from '../../shared-types/rehearsal.ts';
 
 /** named once the grid was settled: nothing below was chosen by looking at them */
 export const SEEDS = ['fir', 'ginkgo', 'hazel', 'ivy', 'juniper'];
@@ -24,8 +26,8 @@ export const CASES = [
 /** What was found for one seed: with settings from evidence, and with the published window and rank. */
 export interface EvidenceRow {
   seed: string;
-  chosen: Found;
-  published: Found;
+  chosen: Model;
+  published: Model;
 }
 
 /** x of the Lorenz equations from a random start, after 30 units, with noise of 1 % of its standard deviation. */
@@ -43,47 +45,45 @@ export function noisyLorenz(seed: string): { times: Float64Array; values: Float6
   };
 }
 
-function taskFor(seed: string, leastLead: number, horizon: number): SearchTask {
+/** Windows in samples and ranks to choose among; nothing is tried but the forcing. */
+function modelFor(
+  seed: string,
+  { leastLead, horizon }: { leastLead: number; horizon: number },
+  windows: readonly number[],
+  ranks: readonly number[],
+): Model {
   const { times, values, deviation } = noisyLorenz(seed);
-  return {
-    name: seed,
-    channels: [{ channel: 'x', unit: '' }],
-    recordings: [[{ channel: 'x', times, values }]],
-    interval: INTERVAL,
-    gapIntervals: 3,
-    center: 'mean',
-    wishes: {
-      regime: { kind: 'sides', low: -0.1 * deviation, high: 0.1 * deviation },
-      regimeChannel: null,
+  return chooseSettings({
+    request: RehearsalRequest.parse({
+      recordings: [seed],
+      channels: ['x'],
+      regime: `sides:${-0.1 * deviation},${0.1 * deviation}`,
       leastLead,
       horizon,
-      threshold: null,
-      rearm: null,
-      onDelay: null,
-      holdOff: null,
-    },
-    ceiling: null,
-    pairs: WINDOWS.flatMap((delays) => RANKS.map((rank) => ({ delays, rank }))),
-    tunePart: 0.5,
-    uniform: createRandom(`${seed} shifts`).uniform,
-  };
+      variable: 'forcing',
+      windows: windows.map((delays) => delays * INTERVAL),
+      ranks,
+    }),
+    recordings: [{ name: seed, sha256: seed, series: [{ channel: 'x', times, values }], leftOut: [] }],
+    program: 'evidence',
+    at: '2026-01-01T00:00:00Z',
+    interval: INTERVAL,
+  });
 }
 
 /** Runs one case over all seeds. */
 export function runCase(leastLead: number, horizon: number): EvidenceRow[] {
-  return SEEDS.map((seed) => {
-    const task = taskFor(seed, leastLead, horizon);
-    return {
-      seed,
-      chosen: chooseSettings(task),
-      published: judgePair(task, PUBLISHED.delays, PUBLISHED.rank),
-    };
-  });
+  const spans = { leastLead, horizon };
+  return SEEDS.map((seed) => ({
+    seed,
+    chosen: modelFor(seed, spans, WINDOWS, RANKS),
+    published: modelFor(seed, spans, [PUBLISHED.delays], [PUBLISHED.rank]),
+  }));
 }
 
 /** Mean skill share over the seeds. */
-export function meanShare(rows: EvidenceRow[], pick: (row: EvidenceRow) => Found): number {
-  return rows.reduce((sum, row) => sum + (pick(row).score.skillShare ?? Number.NaN), 0) / rows.length;
+export function meanShare(rows: EvidenceRow[], pick: (row: EvidenceRow) => Model): number {
+  return rows.reduce((sum, row) => sum + (pick(row).score!.skillShare ?? Number.NaN), 0) / rows.length;
 }
 
 /** One case as lines of text. */
@@ -91,7 +91,7 @@ export function tableOf(leastLead: number, horizon: number, rows: EvidenceRow[])
   const lines = [
     `Lorenz x, noise 1 % of the sd, interval ${INTERVAL}, ${SAMPLES} samples; switch: sides at ± a tenth of the sd;`,
     `first half for choosing, second judged; windows ${WINDOWS.join(' ')} samples, ranks ${RANKS.join(' ')};`,
-    `variable |forcing|, re-arm 0.8 × threshold, hold-off = horizon − least lead; seeds ${SEEDS.join(', ')}`,
+    `variable |forcing|, re-arm, on-delay and hold-off chosen with it; seeds ${SEEDS.join(', ')}`,
     `least lead ${leastLead}, horizon ${horizon} (an orbit lasts 0.75)`,
     'seed       window rank threshold  switches detection came true  lead  (random)  skill  share      p',
     ...rows.map(({ seed, chosen }) => lineOf(seed, chosen)),
@@ -103,21 +103,21 @@ export function tableOf(leastLead: number, horizon: number, rows: EvidenceRow[])
   return `${lines.join('\n')}\n`;
 }
 
-function lineOf(seed: string, { chosen, score }: Found): string {
+function lineOf(seed: string, { delays, rank, rule, score }: Model): string {
   const number = (value: number | null, digits: number, width: number) =>
     (value === null ? '–' : value.toFixed(digits)).padStart(width);
   return [
     seed.padEnd(10),
-    String(chosen.delays).padStart(6),
-    String(chosen.rank).padStart(4),
-    number(chosen.point.rule.threshold, 2, 9),
-    String(score.switches.total).padStart(9),
-    number(score.detection.value, 3, 9),
-    number(score.cameTrue.value, 3, 9),
-    number(score.lead.median, 2, 5),
-    number(score.lead.random, 2, 8),
-    number(score.skill, 3, 7),
-    number(score.skillShare, 3, 6),
-    number(score.pValue, 3, 6),
+    String(delays).padStart(6),
+    String(rank).padStart(4),
+    number(rule!.threshold, 2, 9),
+    String(score!.switches.total).padStart(9),
+    number(score!.detection.value, 3, 9),
+    number(score!.cameTrue.value, 3, 9),
+    number(score!.lead.median, 2, 5),
+    number(score!.lead.random, 2, 8),
+    number(score!.skill, 3, 7),
+    number(score!.skillShare, 3, 6),
+    number(score!.pValue, 3, 6),
   ].join(' ');
 }

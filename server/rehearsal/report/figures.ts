@@ -1,6 +1,7 @@
 import type { Contender, RehearsalResult } from '../../../shared-types/rehearsal.ts';
+import { inUnit, rateUnitOf, spanUnitOf } from '../words.ts';
 import { type Area, type Axis, axisBelow, axisLeft, createAxis } from './axis.ts';
-import { type Html, html, percentWords, secondsWords, shortWords } from './html.ts';
+import { type Html, html, percentWords, shortWords, spanWords } from './html.ts';
 
 const WIDTH = 380;
 const HEIGHT = 270;
@@ -15,12 +16,14 @@ interface Line {
   words: string;
 }
 
-/** False warnings an hour against the share warned: each variable a line, the baselines thin, the chosen point ringed. */
+/** False warnings in a fitting unit against the share warned: each variable a line, the baselines thin, the chosen point ringed. */
 export function tradeOff(result: RehearsalResult): Html {
   const { score, request } = result;
   const lines = linesOf(result);
   const most = reachOf(result, lines);
-  const x = createAxis(0, most, AREA.left, AREA.right);
+  const unit = rateUnitOf(score.watchedSeconds);
+  const axis = createAxis(0, inUnit(most, unit), AREA.left, AREA.right);
+  const x = { ...axis, at: (perHour: number) => axis.at(inUnit(perHour, unit)) };
   const y = createAxis(0, 1, AREA.bottom, AREA.top);
   const drawn = lines.map(
     ({ contender, style }) => html`<path class="line ${style}" d="${pathOf(contender, x, y)}"/>`,
@@ -35,8 +38,8 @@ export function tradeOff(result: RehearsalResult): Html {
       ? null
       : html`<circle class="chosen" cx="${x.at(score.falsePerHour.value).toFixed(1)}" cy="${y.at(score.detection.value).toFixed(1)}" r="5"/>`;
   return drawing(
-    'Trade-off on the judged part: false warnings an hour against the share of switches warned',
-    html`${axisLeft(y, AREA, 'share warned', percentWords)}${axisBelow(x, AREA, 'false warnings an hour')}${limit}<clipPath id="plot"><rect x="${AREA.left}" y="${AREA.top}" width="${AREA.right - AREA.left}" height="${AREA.bottom - AREA.top}"/></clipPath><g clip-path="url(#plot)">${drawn}</g>${chosen}`,
+    `Trade-off on the judged part: false warnings ${unit.words} against the share of switches warned`,
+    html`${axisLeft(y, AREA, 'share warned', percentWords)}${axisBelow(axis, AREA, `false warnings ${unit.words}`)}${limit}<clipPath id="plot"><rect x="${AREA.left}" y="${AREA.top}" width="${AREA.right - AREA.left}" height="${AREA.bottom - AREA.top}"/></clipPath><g clip-path="url(#plot)">${drawn}</g>${chosen}`,
     html`${legend(lines)}<p class="note">Each line: the most that any threshold warned of with no more false warnings; the ring is what was chosen.</p>`,
   );
 }
@@ -77,7 +80,7 @@ function reachOf({ score, request }: RehearsalResult, lines: readonly Line[]): n
 }
 
 /** Steps: the most that any threshold warned of with no more false warnings than that. */
-function pathOf({ curve }: Contender, x: Axis, y: Axis): string {
+function pathOf({ curve }: Contender, x: Pick<Axis, 'at'>, y: Axis): string {
   const points = [...curve].sort((a, b) => a.falsePerHour - b.falsePerHour || b.detection - a.detection);
   let path = '';
   let most = Number.NEGATIVE_INFINITY;
@@ -87,7 +90,7 @@ function pathOf({ curve }: Contender, x: Axis, y: Axis): string {
     const [right, up] = [x.at(falsePerHour).toFixed(1), y.at(detection).toFixed(1)];
     path += path === '' ? `M${right} ${up}` : `H${right}V${up}`;
   }
-  return `${path}H${x.at(x.high).toFixed(1)}`;
+  return `${path}H${AREA.right}`;
 }
 
 function legend(lines: readonly Line[]): Html {
@@ -106,7 +109,9 @@ export function leadHistogram(result: RehearsalResult): Html {
   const counts = new Array<number>(BARS).fill(0);
   for (const lead of leads)
     counts[Math.max(0, Math.min(BARS - 1, Math.floor((lead / settings.horizon) * BARS)))]! += 1;
-  const x = createAxis(0, settings.horizon, AREA.left, AREA.right);
+  const unit = spanUnitOf(settings.horizon);
+  const axis = createAxis(0, settings.horizon / unit.seconds, AREA.left, AREA.right);
+  const x = { at: (seconds: number) => axis.at(seconds / unit.seconds) };
   const y = createAxis(0, Math.max(1, ...counts), AREA.bottom, AREA.top, 4);
   const whole = { ...y, ticks: y.ticks.filter(Number.isInteger) };
   const bars = counts.map((count, i) => {
@@ -118,16 +123,16 @@ export function leadHistogram(result: RehearsalResult): Html {
   });
   const least = x.at(settings.leastLead);
   const median = score.lead.median;
-  const marks = html`<path class="least" d="M${least.toFixed(1)} ${AREA.top - 4}V${AREA.bottom}"/><text x="${least.toFixed(1)}" y="${AREA.top - 9}" text-anchor="middle" class="mark">least lead ${secondsWords(settings.leastLead)}</text>${
+  const marks = html`<path class="least" d="M${least.toFixed(1)} ${AREA.top - 4}V${AREA.bottom}"/><text x="${least.toFixed(1)}" y="${AREA.top - 9}" text-anchor="middle" class="mark">least lead ${spanWords(settings.leastLead)}</text>${
     median === null
       ? null
       : html`<path class="median" d="M${(x.at(median) - 4.5).toFixed(1)} ${AREA.top - 8}h9l-4.5 8z"/>`
   }`;
-  const words = request.delay > 0 ? 'lead, less the delay (s)' : 'lead (s)';
+  const words = `lead${request.delay > 0 ? ', less the delay' : ''} (${unit.words})`;
   return drawing(
     `Leads of the ${leads.length} warned switches of the judged part`,
-    html`${axisLeft(whole, AREA, 'switches')}${bars}${axisBelow(x, AREA, words)}${marks}`,
-    html`<p class="note">${median === null ? 'No switch was warned.' : html`Triangle: the median, ${secondsWords(median)}.`}</p>`,
+    html`${axisLeft(whole, AREA, 'switches')}${bars}${axisBelow(axis, AREA, words)}${marks}`,
+    html`<p class="note">${median === null ? 'No switch was warned.' : html`Triangle: the median, ${spanWords(median)}.`}</p>`,
   );
 }
 
@@ -156,9 +161,10 @@ export function settingsMap(result: RehearsalResult): Html {
     }${chosen ? html`<rect class="chosenCell" x="${(x + 1.5).toFixed(1)}" y="${(y + 1.5).toFixed(1)}" width="${(wide - 3).toFixed(1)}" height="${(high - 3).toFixed(1)}"/>` : null}`;
   });
   const every = Math.ceil(windows.length / 9);
+  const unit = spanUnitOf(windows.at(-1)! * settings.interval);
   const below = windows.map((delays, i) =>
     i % every === 0
-      ? html`<text x="${(AREA.left + wide * (i + 0.5)).toFixed(1)}" y="${AREA.bottom + 16}" text-anchor="middle">${shortWords(delays * settings.interval)}</text>`
+      ? html`<text x="${(AREA.left + wide * (i + 0.5)).toFixed(1)}" y="${AREA.bottom + 16}" text-anchor="middle">${shortWords((delays * settings.interval) / unit.seconds)}</text>`
       : '',
   );
   const left = ranks.map(
@@ -167,7 +173,7 @@ export function settingsMap(result: RehearsalResult): Html {
   );
   return drawing(
     'Windows and ranks tried on the tuning part',
-    html`${cells}${below}${left}<text class="title" x="${AREA.left}" y="${AREA.top - 12}">rank</text><text class="title" x="${(AREA.left + AREA.right) / 2}" y="${AREA.bottom + 33}" text-anchor="middle">window (s)</text>`,
+    html`${cells}${below}${left}<text class="title" x="${AREA.left}" y="${AREA.top - 12}">rank</text><text class="title" x="${(AREA.left + AREA.right) / 2}" y="${AREA.bottom + 33}" text-anchor="middle">window (${unit.words})</text>`,
     html`<p class="note">Skill in hundredths, on folds that did not choose the threshold; the frame is what was chosen.</p>`,
   );
 }

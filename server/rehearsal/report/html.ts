@@ -1,3 +1,5 @@
+import { percent, spanWords as plainSpan, short } from '../words.ts';
+
 const ENTITIES: Record<string, string> = {
   '&': '&amp;',
   '<': '&lt;',
@@ -32,18 +34,17 @@ export const figure = (value: number | null, words: (value: number) => string): 
     ? html`<span class="none">–</span>`
     : html`<data value="${value}">${words(value)}</data>`;
 
-/** "95 %" of a share; a tenth more where it is close to nothing or to all. */
-export function percentWords(share: number): string {
-  const percent = 100 * share;
-  const digits = percent > 0 && percent < 100 && (percent < 1 || percent > 99) ? 1 : 0;
-  return `${percent.toFixed(digits)}\u00a0%`;
-}
+/** Words that do not break, with the minus sign of print. */
+const printed = (words: string): string => words.replaceAll(' ', '\u00a0').replace(/^-/, '−');
 
-/** A number with three digits, without an exponent where it can be: "0.8", "12.3", "1240". */
-export function shortWords(value: number): string {
-  const short = Number(value.toPrecision(3));
-  return (Math.abs(value) >= 1000 ? String(Math.round(value)) : String(short)).replace('-', '−');
-}
+/** "95 %" of a share; a tenth more where it is close to nothing or to all. */
+export const percentWords = (share: number): string => printed(percent(share));
+
+/** A number with about three digits: "0.8", "12.3", "1240". */
+export const shortWords = (value: number): string => printed(short(value));
+
+/** "20 ms", "45.2 s", "29.6 min", "3.2 h", "12 days", "3 years". */
+export const spanWords = (seconds: number): string => printed(plainSpan(seconds));
 
 /** Below this a recording has elapsed time, not the time of a clock. */
 const CLOCK_TIME = 1e8;
@@ -52,16 +53,4 @@ const CLOCK_TIME = 1e8;
 export function timeWords(time: number): string {
   if (time < CLOCK_TIME) return `${Number(time.toFixed(3))}\u00a0s`;
   return `${new Date(1000 * time).toISOString().slice(0, 19).replace('T', ' ')} UTC`;
-}
-
-/** "45.2 s". */
-export const secondsWords = (seconds: number): string => `${shortWords(seconds)}\u00a0s`;
-
-/** "45.2 s", "29.6 min", "3.2 h", "12 days". */
-export function spanWords(seconds: number): string {
-  if (seconds < 120) return secondsWords(seconds);
-  if (seconds < 7200) return `${shortWords(seconds / 60)}\u00a0min`;
-  return seconds < 172_800
-    ? `${shortWords(seconds / 3600)}\u00a0h`
-    : `${shortWords(seconds / 86_400)}\u00a0days`;
 }

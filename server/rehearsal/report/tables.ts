@@ -1,15 +1,7 @@
 import type { RehearsalResult } from '../../../shared-types/rehearsal.ts';
 import type { Interval } from '../../../shared-types/score.ts';
-import {
-  figure,
-  type Html,
-  html,
-  percentWords,
-  secondsWords,
-  shortWords,
-  spanWords,
-  timeWords,
-} from './html.ts';
+import { falseRateWords, inUnit, rateUnitOf, type TimeUnit } from '../words.ts';
+import { figure, type Html, html, percentWords, shortWords, spanWords, timeWords } from './html.ts';
 
 const count = (value: number): Html => figure(value, String);
 
@@ -21,9 +13,16 @@ function intervalRow(name: string, { value, low, high }: Interval, words: (value
   }</td></tr>`;
 }
 
+/** A rate with its interval in a unit, from one per hour. */
+export function rateIn({ value, low, high }: Interval, unit: TimeUnit): Interval {
+  const [a, b, c] = [value, low, high].map((one) => (one === null ? null : inUnit(one, unit)));
+  return { value: a!, low: b!, high: c! };
+}
+
 /** The score of the judged part: fractions and rates with their 95 % intervals, then what was counted. */
 export function scoreTable({ score }: RehearsalResult): Html {
   const { switches, warnings, lead } = score;
+  const unit = rateUnitOf(score.watchedSeconds);
   const counted = (counts: Record<string, number>) =>
     Object.entries(counts)
       .filter(([name, value]) => name !== 'total' && value > 0)
@@ -32,8 +31,8 @@ export function scoreTable({ score }: RehearsalResult): Html {
 ${intervalRow('switches warned', score.detection, percentWords)}
 ${intervalRow('warnings that came true', score.cameTrue, percentWords)}
 ${intervalRow('false alarm ratio', score.falseRatio, percentWords)}
-${intervalRow('false warnings an hour', score.falsePerHour, shortWords)}
-<tr><th>lead: median</th><td class="n">${figure(lead.median, secondsWords)}</td><td>10 % to 90 %: ${figure(lead.p10, secondsWords)} to ${figure(lead.p90, secondsWords)}; of a warner that knows nothing: ${figure(lead.random, secondsWords)}</td></tr>
+${intervalRow(`false warnings ${unit.words}`, rateIn(score.falsePerHour, unit), shortWords)}
+<tr><th>lead: median</th><td class="n">${figure(lead.median, spanWords)}</td><td>10 % to 90 %: ${figure(lead.p10, spanWords)} to ${figure(lead.p90, spanWords)}; of a warner that knows nothing: ${figure(lead.random, spanWords)}</td></tr>
 <tr><th>skill: warned less time in spans</th><td class="n">${figure(score.skill, shortWords)}</td><td>p ${figure(score.pValue, shortWords)}; ${figure(score.tau, percentWords)} of the time lay in a span; share of a perfect warner's skill: ${figure(score.skillShare, percentWords)}</td></tr>
 <tr><th>switches</th><td class="n">${count(switches.total)}</td><td>${counted(switches)}</td></tr>
 <tr><th>warnings</th><td class="n">${count(warnings.total)}</td><td>${counted(warnings)}</td></tr>
@@ -52,10 +51,12 @@ export function contenderTable({ contenders, settings }: RehearsalResult): Html 
 }
 
 /** What was asked and what was chosen. */
-export function settingsTable({ request, settings, tried, weak }: RehearsalResult): Html {
+export function settingsTable({ request, settings, score, tried, weak }: RehearsalResult): Html {
   const { ceiling } = request;
   const ceilings = [
-    ceiling.falsePerHour === null ? null : `${shortWords(ceiling.falsePerHour)}\u00a0false warnings an hour`,
+    ceiling.falsePerHour === null
+      ? null
+      : `at most ${falseRateWords(ceiling.falsePerHour, score.watchedSeconds)}`,
     ceiling.cameTrue === null ? null : `at least ${percentWords(ceiling.cameTrue)} coming true`,
   ].filter((words) => words !== null);
   const side = settings.direction === 'falling' ? 'below' : 'above';
@@ -67,10 +68,10 @@ export function settingsTable({ request, settings, tried, weak }: RehearsalResul
     ],
     [
       'least lead, horizon',
-      html`${figure(settings.leastLead, secondsWords)}, ${figure(settings.horizon, secondsWords)}`,
+      html`${figure(settings.leastLead, spanWords)}, ${figure(settings.horizon, spanWords)}`,
     ],
     ['acceptable', ceilings.join(', ') || 'no ceiling was given'],
-    ['delay until it reaches somebody', html`${figure(request.delay, secondsWords)}`],
+    ['delay until it reaches somebody', html`${figure(request.delay, spanWords)}`],
     [
       'tuning part',
       html`${figure(request.tunePart, percentWords)} of the time, or of four or more recordings`,
@@ -79,11 +80,11 @@ export function settingsTable({ request, settings, tried, weak }: RehearsalResul
     ['re-arm', html`${figure(settings.rearm, shortWords)}`],
     [
       'on-delay, hold-off',
-      html`${figure(settings.onDelay, secondsWords)}, ${figure(settings.holdOff, secondsWords)}`,
+      html`${figure(settings.onDelay, spanWords)}, ${figure(settings.holdOff, spanWords)}`,
     ],
     [
       'window',
-      html`${figure(settings.window, secondsWords)} (${count(settings.delays)} delays of ${figure(settings.interval, secondsWords)})`,
+      html`${figure(settings.window, spanWords)} (${count(settings.delays)} delays of ${figure(settings.interval, spanWords)})`,
     ],
     ['rank', count(settings.rank)],
     [

@@ -2,11 +2,13 @@ import { describe, expect, it } from 'vitest';
 import { foldStarts, heldOutPoint } from '../../../server/rehearsal/folds.ts';
 import type { GriddedRecording } from '../../../server/rehearsal/gridded.ts';
 import { emptyTally, type Tally } from '../../../server/rehearsal/tally.ts';
-import { createTried, pointOf, ruleOfWishes, tryRule } from '../../../server/rehearsal/threshold.ts';
+import { createTried, pointOf, tryWarner, warnerOf } from '../../../server/rehearsal/threshold.ts';
 import { withSummary } from '../../../server/rehearsal/trace.ts';
 import { createRandom } from '../../../server/signal/random.ts';
+import { steppedRule, watchRuleWithDefaults } from '../../../server/watch/watchRule.ts';
 
-const wishes = { leastLead: 2, horizon: 6, threshold: null, rearm: null, onDelay: null, holdOff: null };
+const ruleAt = (threshold: number) =>
+  watchRuleWithDefaults({ variable: 'forcing', direction: 'rising', threshold, leastLead: 2, horizon: 6 });
 
 const recording = (steps: number): GriddedRecording => ({
   interval: 0.5,
@@ -38,7 +40,7 @@ function pointOfFolds(threshold: number, folds: Tally[]) {
     tally.watched += one.watched;
     tally.spanned += one.spanned;
   }
-  return pointOf(ruleOfWishes(wishes, threshold), tally, folds, 1)!;
+  return pointOf(ruleAt(threshold), tally, folds, 1)!;
 }
 
 describe('folds', () => {
@@ -80,9 +82,10 @@ describe('folds', () => {
         switches,
         unseen: Float64Array.of(),
       };
-      const rule = ruleOfWishes(wishes, 0.9);
-      const whole = tryRule([createTried(trace, of)], rule, 1)!;
-      const folded = tryRule([createTried(trace, of, [0, 100, 200, 300, count])], rule, 1)!;
+      const rule = ruleAt(0.9);
+      const warner = warnerOf(steppedRule(rule, 1));
+      const whole = tryWarner([createTried(trace, of)], warner, rule, 1)!;
+      const folded = tryWarner([createTried(trace, of, [0, 100, 200, 300, count])], warner, rule, 1)!;
       expect({ ...folded, folds: [] }).toEqual(whole);
       expect(folded.folds).toHaveLength(4);
     }

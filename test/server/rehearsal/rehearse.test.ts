@@ -1,10 +1,11 @@
 import { describe, expect, it } from 'vitest';
+import { chooseSettings } from '../../../server/rehearsal/chooseSettings.ts';
 import { type RehearsalOptions, rehearse } from '../../../server/rehearsal/rehearse.ts';
-import { chooseSettings, type SearchTask } from '../../../server/rehearsal/search.ts';
 import { createRandom } from '../../../server/rigs/random.ts';
 import { createStand, STAND_LOOPS } from '../../../server/rigs/stand.ts';
 import type { Happening, WatchSettings } from '../../../server/watch/types.ts';
 import { createWatch } from '../../../server/watch/watch.ts';
+import { RehearsalRequest } from '../../../shared-types/rehearsal.ts';
 
 /** An hour and a half of loop A, with three long gaps and a restart of the clock's phase after each. */
 function brokenHour(seed: string) {
@@ -18,33 +19,23 @@ function brokenHour(seed: string) {
 }
 
 const series = brokenHour('rehearsed');
-const task: SearchTask = {
-  name: 'rehearsed',
-  channels: [{ channel: 'Loop A', unit: 'K' }],
-  recordings: [[series]],
-  interval: 0.4,
-  gapIntervals: 3,
-  center: 'mean',
-  wishes: {
-    regime: { kind: 'sides', low: -0.3, high: 0.3 },
-    regimeChannel: null,
+const model = chooseSettings({
+  request: RehearsalRequest.parse({
+    recordings: ['rehearsed'],
+    channels: ['Loop A'],
+    regime: 'sides:-0.3,0.3',
     leastLead: 10,
     horizon: 20,
-    threshold: null,
-    rearm: null,
-    onDelay: null,
-    holdOff: null,
-  },
-  ceiling: null,
-  pairs: [
-    { delays: 20, rank: 2 },
-    { delays: 26, rank: 3 },
-  ],
-  tunePart: 0.5,
-  uniform: createRandom(5).uniform,
-};
-const found = chooseSettings(task);
-const { model } = found;
+    variable: 'forcing',
+    windows: [8, 10.4],
+    ranks: [2, 3],
+    seed: 5,
+  }),
+  recordings: [{ name: 'rehearsed', sha256: '', series: [series], leftOut: [] }],
+  program: 'foreshift test',
+  at: '2026-01-01T00:00:00Z',
+  interval: 0.4,
+});
 const settings: WatchSettings = {
   model,
   channels: ['Loop A'],
@@ -57,9 +48,9 @@ const run = (changes: Partial<RehearsalOptions> = {}) =>
 
 describe('a rehearsal', () => {
   it('gives, by the live watch, exactly the score that the search found by its own short way', () => {
-    expect(run().score).toEqual(found.score);
-    expect(found.score.switches.total).toBeGreaterThan(50);
-    expect(found.score.skill).toBeGreaterThan(0.3);
+    expect(run().score).toEqual(model.score);
+    expect(model.score!.switches.total).toBeGreaterThan(50);
+    expect(model.score!.skill).toBeGreaterThan(0.3);
   });
 
   it('gives the same whatever the size of the frames', () => {

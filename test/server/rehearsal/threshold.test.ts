@@ -1,12 +1,17 @@
 import { describe, expect, it } from 'vitest';
 import { emptyTally } from '../../../server/rehearsal/tally.ts';
-import { choosePoint, type OperatingPoint, ruleOfWishes } from '../../../server/rehearsal/threshold.ts';
-
-const wishes = { leastLead: 1, horizon: 3, threshold: null, rearm: null, onDelay: null, holdOff: null };
+import { choosePoint, type OperatingPoint } from '../../../server/rehearsal/threshold.ts';
+import { watchRuleWithDefaults } from '../../../server/watch/watchRule.ts';
 
 function point(threshold: number, given: Partial<OperatingPoint>): OperatingPoint {
   return {
-    rule: ruleOfWishes(wishes, threshold),
+    rule: watchRuleWithDefaults({
+      variable: 'forcing',
+      direction: 'rising',
+      threshold,
+      leastLead: 1,
+      horizon: 3,
+    }),
     tally: emptyTally(),
     folds: [],
     warnings: 10,
@@ -56,19 +61,5 @@ describe('choosing a threshold', () => {
 
   it('chooses nothing among nothing', () => {
     expect(chosen([])).toBeNull();
-  });
-
-  it('fills in re-arm, on-delay and hold-off by default and keeps what was wished for', () => {
-    expect(ruleOfWishes(wishes, 2)).toMatchObject({
-      rearm: 1.6,
-      onDelay: 0,
-      holdOff: 2,
-      direction: 'rising',
-    });
-    expect(ruleOfWishes({ ...wishes, rearm: 1, onDelay: 0.5, holdOff: 9 }, 2)).toMatchObject({
-      rearm: 1,
-      onDelay: 0.5,
-      holdOff: 9,
-    });
   });
 });

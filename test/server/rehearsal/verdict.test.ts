@@ -22,6 +22,8 @@ const task: VerdictTask = {
   variable: 'forcing',
   ceiling: { falsePerHour: null, cameTrue: null },
   rival: { name: 'level rising', skill: 0.4, value: 0.25, low: 0.1, high: 0.4 },
+  level: { name: 'level rising', skill: 0.4 },
+  outside: null,
   fittedOnJudged: false,
   levelChosenFreely: true,
   perfect: 0.7,
@@ -48,7 +50,7 @@ describe('the verdict', () => {
     const { kind, sentence } = of({ score: few, rival: equal }, { pValue: 0.5 });
     expect(kind).toBe('too few events');
     // 4 missing at 8 · 0.5 judged an hour
-    expect(sentence).toMatch(/6 reversals judged.*about 60 minutes more/);
+    expect(sentence).toMatch(/6 reversals judged.*about 60 min more/);
     const ten = { ...score, switches: { total: 12, warned: 5, late: 2, missed: 3, blind: 2 } };
     expect(of({ score: ten }).kind).toBe('useful');
   });
@@ -86,5 +88,52 @@ describe('the verdict', () => {
     expect(of({ variable: 'level rising' }).sentence).toContain('A plain level is the answer');
     expect(of({ variable: 'level rising', levelChosenFreely: false }).sentence).not.toContain('plain level');
     expect(of({ perfect: 0.19 }, { skillShare: null }).sentence).toContain('The horizon is too long');
+  });
+
+  it('says what to do when a plain level is as good: how to watch it', () => {
+    expect(of({ rival: equal }).sentence).toMatch(
+      /Watch the level then: rehearse again with a plain level .*\(--variable level\)\.$/,
+    );
+  });
+
+  it('says of a baseline that cannot be watched that it cannot, and which level can where that is as good', () => {
+    const rival = { ...equal, name: 'distance from the mean falling', skill: 0.7 };
+    const near = of({ rival, level: { name: 'level falling', skill: 0.66 } }).sentence;
+    expect(near).toMatch(
+      /A watch cannot be set on distance from the mean, but on the level falling, whose skill is 0\.66: .*--variable level/,
+    );
+    for (const level of [null, { name: 'level falling', skill: 0.2 }]) {
+      const { kind, than, sentence } = of({ rival, level });
+      expect([kind, than]).toEqual(['no better than', 'distance from the mean falling']);
+      expect(sentence).toMatch(/read it off the channel itself, or watch the forcing/);
+      expect(sentence).not.toContain('--variable');
+    }
+  });
+
+  it('lets a level that was chosen be watched as it is, whatever plain reading is as good or better', () => {
+    const variable = 'level rising';
+    const other = { ...equal, name: 'level falling' };
+    expect(of({ variable, rival: other }).sentence).toMatch(
+      /that of the level rising, chosen here, 0\.65; .*can be watched as it is\.$/,
+    );
+    const better = { name: 'running variance rising', skill: 0.8, value: -0.15, low: -0.2, high: -0.1 };
+    expect(of({ variable, rival: better }).sentence).toMatch(/a limit on running variance, .* better\.$/);
+  });
+
+  it('names a baseline with more skill that the ceiling leaves out', () => {
+    const outside = { name: 'a clock', skill: 0.9 };
+    const { kind, sentence } = of({ outside, ceiling: { falsePerHour: 1, cameTrue: null } });
+    expect(kind).toBe('useful');
+    expect(sentence).toContain('a clock has more, 0.9, but does not keep within what was asked for');
+  });
+
+  it('counts rates and spans in units that fit the recording', () => {
+    const years = { watchedSeconds: 20 * 31_557_600, falsePerHour: interval(1 / 8766) };
+    const ceiling = { falsePerHour: 0.5 / 8766, cameTrue: null };
+    expect(of({ ceiling }, years).sentence).toMatch(
+      /^Weak: 1 false warning a year, outside the ceiling of 0\.5/,
+    );
+    const slow = of({ score: few, perHour: 0.2 / 8766, judgedShare: 0.5 });
+    expect(slow.sentence).toContain('about 40 years more of recording');
   });
 });
