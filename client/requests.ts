@@ -1,6 +1,6 @@
 import type { LogbookPage } from '../shared-types/logbook.ts';
 import type { ModelSummary } from '../shared-types/model.ts';
-import type { SwitchEvent, Warning } from '../shared-types/warning.ts';
+import type { ActedOn, SwitchEvent, Warning } from '../shared-types/warning.ts';
 import type { NewWatchToSend, WatchAction } from '../shared-types/watch.ts';
 import type { FetchedColumns } from './columns.ts';
 
@@ -14,6 +14,11 @@ export type ActionToSend = WatchAction extends infer A
 /** Does something to a watch. @throws Error with the server's own sentence */
 export async function act(watch: string, action: ActionToSend): Promise<void> {
   await send(`/api/watches/${encodeURIComponent(watch)}/actions`, action);
+}
+
+/** Says that a warning was acted on, or takes it back. @throws Error with the server's own sentence */
+export async function sayActedOn(warning: number, said: ActedOn): Promise<void> {
+  await send(`/api/warnings/${warning}/acted`, said);
 }
 
 /** Puts a model on channels. @throws Error with the server's own sentence */

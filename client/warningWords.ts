@@ -120,6 +120,12 @@ export function outcomeText(warning: Warning): string {
   }
 }
 
+/** "Acted on by Ada: heater trimmed", as far as it was said. */
+export function actedText({ acted }: Warning): string {
+  if (!acted) return 'Acted on';
+  return `Acted on${acted.by === '' ? '' : ` by ${acted.by}`}${acted.text === '' ? '' : `: ${acted.text}`}`;
+}
+
 /** Whether somebody has acknowledged a warning, in words; a watch that asks nobody says so. */
 export function acknowledgedText(warning: Warning, watch: WatchState | undefined): string {
   if (warning.acknowledgedAt !== null) {
@@ -131,6 +137,7 @@ export function acknowledgedText(warning: Warning, watch: WatchState | undefined
 /** The span an open warning speaks for, or what came of it and when. */
 export function settledText(warning: Warning, watch: WatchState | undefined): string {
   const word = watch?.switchWord ?? 'switch';
+  if (warning.outcome === 'acted') return warning.acted?.text ?? '';
   if (warning.outcome === 'open') return `for ${clockText(warning.from)} to ${clockText(warning.to)}`;
   if (warning.lead !== null) return `${word} after ${spanText(warning.lead)}`;
   return warning.outcome === 'false' ? `no ${word} until ${clockText(warning.to)}` : '';

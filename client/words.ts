@@ -121,6 +121,10 @@ export function badgeOf(state: AlarmState): { mark: string; words: string; kind:
       return { mark: '▲', words: 'unacknowledged', kind: 'unacknowledged' };
     case 'returned to normal, unacknowledged':
       return { mark: '△', words: 'returned to normal, unacknowledged', kind: 'returned' };
+    case 'latched, unacknowledged':
+      return { mark: '△', words: 'latched, unacknowledged', kind: 'returned' };
+    case 'latched, acknowledged':
+      return { mark: '✓', words: 'latched, acknowledged', kind: 'acknowledged' };
     case 'acknowledged':
       return { mark: '✓', words: 'acknowledged', kind: 'acknowledged' };
     case 'shelved':

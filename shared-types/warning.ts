@@ -1,5 +1,10 @@
+import { z } from 'zod';
+
 /** What became of a warning; the definitions are the project's scoring rules (server/watch/grading.ts). */
 export type WarningOutcome = 'open' | 'true' | 'repeat' | 'late' | 'false' | 'unseen' | 'acted';
+
+/** What grading alone gives: whether a warning was acted on only a person or an output can say. */
+export type GradedOutcome = Exclude<WarningOutcome, 'acted'>;
 
 /** What became of a switch. */
 export type SwitchOutcome = 'pending' | 'warned' | 'late' | 'missed' | 'blind';
@@ -28,9 +33,31 @@ export interface Warning {
   lead: number | null;
   acknowledgedAt: number | null;
   acknowledgedBy: string | null;
+  /** somebody or something acted on it: its outcome is then `acted`; absent or null: nobody said so */
+  acted?: Acted | null;
   /** it came too late to speak: made after its span began; no tone, no webhook */
   quiet: boolean;
 }
+
+/** That a warning was acted on, so that what happened after it no longer grades it. */
+export interface Acted {
+  /** server clock, Unix seconds */
+  at: number;
+  /** a person's or an output's name; '' when not said */
+  by: string;
+  /** what was done, in words */
+  text: string;
+  /** what it would be without, as far as it is known by now */
+  outcome: GradedOutcome;
+}
+
+/** What a person or an output may say of a warning; `acted` false takes it back. */
+export const ActedOn = z.object({
+  acted: z.boolean().default(true),
+  by: z.string().max(80).default(''),
+  text: z.string().max(500).default(''),
+});
+export type ActedOn = z.infer<typeof ActedOn>;
 
 /** One switch of a watch's regime. Times are channel time. */
 export interface SwitchEvent {
@@ -58,6 +85,10 @@ export interface LogEntry {
   time: number;
   kind:
     | 'acknowledged'
+    /** a warning was acted on, or that was taken back */
+    | 'acted'
+    /** an alarm latches or no longer does; a latched one was reset */
+    | 'latch'
     | 'shelved'
     | 'unshelved'
     | 'out of service'

@@ -62,6 +62,8 @@ export type AlarmState =
   | 'unacknowledged'
   | 'acknowledged'
   | 'returned to normal, unacknowledged'
+  | 'latched, unacknowledged'
+  | 'latched, acknowledged'
   | 'shelved'
   | 'out of service';
 
@@ -81,6 +83,10 @@ export const WatchAction = z.discriminatedUnion('action', [
     reason: z.string().min(1).max(500),
     by: z.string().max(80).default(''),
   }),
+  /** lets a latched alarm go that was acknowledged */
+  z.object({ action: z.literal('reset'), by: z.string().max(80).default('') }),
+  /** whether an alarm stays, after return to normal, until somebody resets it */
+  z.object({ action: z.literal('latch'), on: z.boolean(), by: z.string().max(80).default('') }),
   z.object({ action: z.literal('unshelve'), by: z.string().max(80).default('') }),
   z.object({
     action: z.literal('take out of service'),
@@ -99,6 +105,8 @@ export const NewWatch = z.object({
   channels: z.array(ChannelName).min(1),
   /** below this least lead (seconds) nobody is asked to acknowledge; see "trigger" */
   reaction: z.number().nonnegative().default(30),
+  /** its alarm stays, after return to normal, until somebody resets it */
+  latching: z.boolean().default(false),
   /** on trial it runs beside the one in use, unseen by the operator, graded alike */
   use: z.enum(['in use', 'on trial']).default('in use'),
 });
@@ -126,6 +134,10 @@ export interface WatchState {
   /** when the shelf ends (server clock, Unix seconds) and why; null unless shelved */
   shelvedUntil: number | null;
   reason: string | null;
+  /** who shelved it or took it out of service; null: nobody did, or they did not say */
+  setAsideBy: string | null;
+  /** its alarm stays, after return to normal, until somebody resets it */
+  latching: boolean;
   /** nobody is asked to acknowledge: the least lead is shorter than a person's reaction */
   trigger: boolean;
   window: number;

@@ -6,8 +6,8 @@ export const KINDS: readonly { id: string; name: string; kinds: readonly Logbook
   { id: 'switches', name: 'switches', kinds: ['switch'] },
   {
     id: 'people',
-    name: 'acknowledged, shelved',
-    kinds: ['acknowledged', 'shelved', 'unshelved', 'out of service', 'in service'],
+    name: 'acknowledged, acted, shelved',
+    kinds: ['acknowledged', 'acted', 'latch', 'shelved', 'unshelved', 'out of service', 'in service'],
   },
   { id: 'notes', name: 'notes', kinds: ['note'] },
   { id: 'gaps', name: 'gaps, holes', kinds: ['gap', 'hole', 'refused'] },

@@ -1,5 +1,6 @@
 import type { LogbookEntry, LogbookKind } from '../../shared-types/logbook.ts';
 import { button, element, mark } from '../dom.ts';
+import { actedButton } from '../watch/dialogs.ts';
 import { stripAddress } from '../watch/place.ts';
 import { clockText } from '../words.ts';
 
@@ -12,6 +13,8 @@ const MARKS: Partial<Record<LogbookKind, string>> = {
   warning: '▲',
   switch: '▼',
   acknowledged: '✓',
+  acted: '✓',
+  latch: '‖',
   shelved: '‖',
   unshelved: '‖',
   'out of service': '×',
@@ -80,6 +83,7 @@ function doings(entry: LogbookEntry, actions: RowActions): Node[] {
     mark(link, 'aria-label', `Strip of ${entry.channel} at ${clockText(entry.at, 1)}`);
     made.push(link);
   }
+  if (entry.warning !== null) made.push(actedButton(entry.warning, entry.channel ?? entry.name ?? 'a watch'));
   if (entry.switch !== null) {
     const open = button('card', 'quiet', () =>
       actions.toggleCard(entry, open.closest<HTMLElement>('.logRow')!),

@@ -3,7 +3,9 @@ import type { ModelEvidence } from '../../shared-types/model.ts';
 import type { WatchState } from '../../shared-types/watch.ts';
 import { changes } from '../access/changes.ts';
 import { button, element, mark, say } from '../dom.ts';
+import { act } from '../requests.ts';
 import { gradeSentence } from '../warningWords.ts';
+import { whoIsHere } from '../watch/dialogs.ts';
 import * as requests from './requests.ts';
 
 /** What a person may do with a watch in each use, and the use it leads to. */
@@ -57,6 +59,15 @@ export function createUses(
       element(
         'div',
         'buttons',
+        ...(watch.rule === null || watch.trigger
+          ? []
+          : [
+              changes(
+                button(watch.latching ? 'No longer latch' : 'Latch', 'quiet', () =>
+                  attempt(act(watch.watch, { action: 'latch', on: !watch.latching, by: whoIsHere() })),
+                ),
+              ),
+            ]),
         ...STEPS[watch.use].map(([words, to]) =>
           changes(button(words, 'quiet', () => void attempt(requests.setUse(watch.watch, to)))),
         ),

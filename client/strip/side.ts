@@ -95,5 +95,6 @@ function sayBadge(badge: HTMLElement, channel: ChannelState, watch: WatchState |
 function ruleText(watch: WatchState, unit: string): string {
   if (watch.rule === null) return 'no watch rule';
   const { threshold, direction, variable } = watch.rule;
-  return `warns ${direction === 'falling' ? 'below' : 'above'} ${thresholdText(threshold, variable, unit)}`;
+  const latches = watch.latching ? '; latches' : '';
+  return `warns ${direction === 'falling' ? 'below' : 'above'} ${thresholdText(threshold, variable, unit)}${latches}`;
 }

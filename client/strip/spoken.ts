@@ -1,3 +1,4 @@
+import type { AlarmState, WatchState } from '../../shared-types/watch.ts';
 import { changes } from '../access/changes.ts';
 import { button, element, mark, say } from '../dom.ts';
 import { headline, lastText, leftText, phaseOf, promiseText, unwarnedText } from '../warningWords.ts';
@@ -8,6 +9,7 @@ import { type StripView, spokenFor } from './view.ts';
 export interface StripActions {
   acknowledge(watch: string, upTo: number): Promise<void>;
   shelve(watch: string): void;
+  reset(watch: string): Promise<void>;
   putBack(watch: string, from: 'shelved' | 'out of service'): Promise<void>;
   explainWatching(channel: string, has: 'nothing' | 'no rule'): void;
 }
@@ -48,6 +50,11 @@ export function createSpoken(actions: StripActions): Spoken {
     '',
     doing((now) => actions.shelve(now.watch!.watch)),
   );
+  const reset = button(
+    'Reset',
+    'first',
+    doing((now) => actions.reset(now.watch!.watch)),
+  );
   const back = button(
     '',
     '',
@@ -58,8 +65,8 @@ export function createSpoken(actions: StripActions): Spoken {
     '',
     doing((now) => actions.explainWatching(now.channel.channel, now.watch === null ? 'nothing' : 'no rule')),
   );
-  for (const each of [acknowledge, shelve, back]) changes(each);
-  const buttons = element('p', 'buttons', acknowledge, shelve, back, explain);
+  for (const each of [acknowledge, reset, shelve, back]) changes(each);
+  const buttons = element('p', 'buttons', acknowledge, reset, shelve, back, explain);
   say(fault, null);
   return {
     root: element('div', 'spoken', what, when, until, share, where, buttons, left, fault),
@@ -73,21 +80,25 @@ export function createSpoken(actions: StripActions): Spoken {
       say(share, words.share);
       say(where, words.where);
       say(left, words.left);
-      const asks =
-        watch !== null &&
-        !watch.trigger &&
-        (watch.state === 'unacknowledged' || watch.state === 'returned to normal, unacknowledged');
+      const asks = watch !== null && !watch.trigger && waitsForPerson(watch.state);
       acknowledge.hidden = !asks;
+      reset.hidden = watch?.state !== 'latched, acknowledged';
       shelve.hidden =
         !(asks || words.open) || watch?.state === 'shelved' || watch?.state === 'out of service';
       back.hidden = !(watch?.state === 'shelved' || watch?.state === 'out of service');
       say(back, back.hidden ? null : watch?.state === 'shelved' ? 'Unshelve' : 'Return to service');
       explain.hidden = !(watch === null || watch.rule === null);
-      buttons.hidden = acknowledge.hidden && shelve.hidden && back.hidden && explain.hidden;
-      for (const each of [acknowledge, shelve, back]) each.disabled = next.page.lost;
+      buttons.hidden = [acknowledge, reset, shelve, back, explain].every((each) => each.hidden);
+      for (const each of [acknowledge, reset, shelve, back]) each.disabled = next.page.lost;
     },
   };
 }
+
+/** Whether somebody has yet to acknowledge. */
+const waitsForPerson = (state: AlarmState): boolean =>
+  state === 'unacknowledged' ||
+  state === 'returned to normal, unacknowledged' ||
+  state === 'latched, unacknowledged';
 
 function newestId(view: StripView): number {
   return view.warnings[view.warnings.length - 1]?.id ?? 0;
@@ -123,10 +134,11 @@ function wordsOf(view: StripView): Words {
       what: 'Never warns',
       share: 'Its model has no watch rule: the forcing is drawn, nothing more.',
     };
-  if (watch.state === 'out of service') return { ...NOTHING, what: 'Out of service', share: watch.reason };
+  if (watch.state === 'out of service')
+    return { ...NOTHING, what: 'Out of service', share: reasonText(watch) };
   if (watch.state === 'shelved') {
     const end = watch.shelvedUntil === null ? '' : ` until ${clockText(watch.shelvedUntil)}`;
-    return { ...NOTHING, what: `Shelved${end}`, share: watch.reason, where: shelvedOpen(view) };
+    return { ...NOTHING, what: `Shelved${end}`, share: reasonText(watch), where: shelvedOpen(view) };
   }
   const warning = spokenFor(view);
   if (warning === null || now === null) return quietWords(view);
@@ -146,6 +158,9 @@ function wordsOf(view: StripView): Words {
   };
 }
 
+const reasonText = ({ reason, setAsideBy }: WatchState): string | null =>
+  setAsideBy === null ? reason : `${reason ?? ''} (by ${setAsideBy})`.trim();
+
 function shelvedOpen(view: StripView): string | null {
   return spokenFor(view) === null ? null : 'a warning is open meanwhile';
 }
@@ -158,13 +173,15 @@ function acknowledgedBy(view: StripView, at: number | null): string | null {
 
 function quietWords(view: StripView): Words {
   const watch = view.watch!;
-  const what = view.channel.silent
-    ? 'No data, no warning'
-    : leftOutText(watch) !== null
-      ? 'Left out: cannot warn now'
-      : watch.sight.kind === 'blind'
-        ? 'Blind: cannot warn yet'
-        : 'No warning open';
+  const what = watch.state.startsWith('latched')
+    ? 'Latched: over, not reset'
+    : view.channel.silent
+      ? 'No data, no warning'
+      : leftOutText(watch) !== null
+        ? 'Left out: cannot warn now'
+        : watch.sight.kind === 'blind'
+          ? 'Blind: cannot warn yet'
+          : 'No warning open';
   return {
     ...NOTHING,
     what,

@@ -1,8 +1,10 @@
+import type { Warning } from '../../shared-types/warning.ts';
 import { changes } from '../access/changes.ts';
 import { button, element, mark, say } from '../dom.ts';
 import { recall, remember } from '../remembered.ts';
-import { act, models, startWatch } from '../requests.ts';
-import { howToWatch } from '../warningWords.ts';
+import { act, models, sayActedOn, startWatch } from '../requests.ts';
+import { actedText, howToWatch } from '../warningWords.ts';
+import { clockText } from '../words.ts';
 
 /** Who is at the page, as they last said; '' when they never did. */
 export function whoIsHere(): string {
@@ -75,6 +77,62 @@ export function askToShelve(watch: string, name: string): void {
           ? { action: 'take out of service', ...said }
           : { action: 'shelve', seconds: Number(time.value), ...said },
       );
+      dialog.close();
+    } catch (error) {
+      say(fault, error instanceof Error ? error.message : String(error));
+    }
+    send.disabled = false;
+  });
+}
+
+/** Says that a warning was acted on, or takes it back. */
+export function actedButton(warning: Warning, name: string): HTMLButtonElement {
+  const words = warning.outcome === 'acted' ? 'not acted on…' : 'acted on…';
+  const made = changes(button(words, 'quiet', () => askActedOn(warning, name)));
+  mark(made, 'aria-label', `Warning of ${name} at ${clockText(warning.at, 1)}: ${words}`);
+  return made;
+}
+
+/** Asks who acted on a warning and how, or whether that is to be taken back. */
+function askActedOn(warning: Warning, name: string): void {
+  const back = warning.outcome === 'acted';
+  const what = element('input');
+  what.maxLength = 500;
+  const by = element('input');
+  by.maxLength = 80;
+  by.value = whoIsHere();
+  const fault = element('p', 'fault');
+  say(fault, null);
+  mark(fault, 'role', 'alert');
+  const send = changes(element('button', 'first', back ? 'Take it back' : 'It was acted on'));
+  const form = element(
+    'form',
+    '',
+    ...(back ? [] : [field('What was done', what)]),
+    field('By whom', by),
+    fault,
+    element(
+      'p',
+      'buttons',
+      send,
+      button('Cancel', '', () => dialog.close()),
+    ),
+  );
+  const note = element(
+    'p',
+    'note',
+    back
+      ? `${actedText(warning)}. Taken back, it is graded by what happened.`
+      : 'A warning that was acted on is counted apart: what came after it says nothing about how good warnings are.',
+  );
+  const dialog = modal(`Warning of ${name} at ${clockText(warning.at)}`, note, form);
+  (back ? by : what).focus();
+  form.addEventListener('submit', async (event) => {
+    event.preventDefault();
+    remember('by', by.value);
+    send.disabled = true;
+    try {
+      await sayActedOn(warning.id, { acted: !back, by: by.value, text: what.value });
       dialog.close();
     } catch (error) {
       say(fault, error instanceof Error ? error.message : String(error));

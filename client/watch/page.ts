@@ -67,6 +67,7 @@ export function mountWatch(
   const strips = createStrips(view, {
     acknowledge: (watch, upTo) => act(watch, { action: 'acknowledge', upTo, by: whoIsHere() }),
     shelve: (watch) => askToShelve(watch, nameOf(view.state, watch)),
+    reset: (watch) => act(watch, { action: 'reset', by: whoIsHere() }),
     putBack: (watch, from) =>
       act(watch, { action: from === 'shelved' ? 'unshelve' : 'return to service', by: whoIsHere() }),
     explainWatching,

@@ -2,6 +2,7 @@ import { element, mark, say } from '../dom.ts';
 import type { PageState } from '../feedState.ts';
 import { acknowledgedText, gradeSentence, outcomeText, settledText } from '../warningWords.ts';
 import { clockText, minuteText } from '../words.ts';
+import { actedButton } from './dialogs.ts';
 
 /** Below the strips: today's grade beside what rehearsal promised, and the last warnings with what became of them. */
 export interface Today {
@@ -16,7 +17,7 @@ export function createToday(): Today {
   const since = element('h2', 'since');
   const sentences = element('div', 'sentences');
   const body = element('tbody');
-  const heads = ['Time', 'Channel', 'What became of it', 'Acknowledged', 'Span or lead'].map((text) => {
+  const heads = ['Time', 'Channel', 'What became of it', 'Acknowledged', 'Span or lead', ''].map((text) => {
     const head = element('th', '', text);
     head.scope = 'col';
     return head;
@@ -88,6 +89,7 @@ function rowOf(state: PageState, id: number, today: number): HTMLTableRowElement
     element('td', 'outcome', waits ? '▲ open' : outcomeText(warning)),
     element('td', '', acknowledgedText(warning, watch)),
     element('td', '', settledText(warning, watch)),
+    element('td', '', actedButton(warning, nameOf(state, warning.watch))),
   );
   mark(row, 'data-waits', waits ? 'yes' : null);
   mark(row, 'data-outcome', warning.outcome);

@@ -29,6 +29,7 @@ export const RULES: Readonly<Record<string, Rule>> = {
   'GET /api/models/:name': 'viewer',
   'GET /api/models/:name/evidence': 'viewer',
   'GET /api/warnings': 'viewer',
+  'POST /api/warnings/:id/acted': 'operator',
   'GET /api/switches': 'viewer',
   'GET /api/switches/:id/card': 'viewer',
   'GET /api/recordings': 'viewer',

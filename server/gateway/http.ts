@@ -3,13 +3,23 @@ import { fileURLToPath } from 'node:url';
 import express, { type Request } from 'express';
 import { z } from 'zod';
 import type { ModelEvidence } from '../../shared-types/model.ts';
+import { ActedOn } from '../../shared-types/warning.ts';
 import { NewWatch, WatchAction } from '../../shared-types/watch.ts';
 import { evidenceOf } from '../model/evidence.ts';
 import type { Access, Identity } from './access.ts';
 import { may } from './accessRules.ts';
 import type { HostCheck } from './hostCheck.ts';
 import { gate, nameTheDoer, routeAccess } from './httpAccess.ts';
-import { answerErrors, columnsAsked, numberIn, problem, read, sendEither, text } from './httpAnswers.ts';
+import {
+  answerErrors,
+  columnsAsked,
+  numberIn,
+  numberOf,
+  problem,
+  read,
+  sendEither,
+  text,
+} from './httpAnswers.ts';
 import { keepNothing, setHeaders } from './httpHeaders.ts';
 import { routeLogbook } from './httpLogbook.ts';
 import { routeMarks } from './httpMarks.ts';
@@ -120,6 +130,9 @@ function routeRecords(app: express.Express, hub: Hub): void {
     const channel = text(request.query.channel);
     const after = numberIn(request.query, 'after', 0);
     response.json(await hub.store.warnings({ ...(channel ? { channel } : {}), after, most: MOST_ENTRIES }));
+  });
+  app.post('/api/warnings/:id/acted', (request, response) => {
+    response.json(hub.watches.actOn(numberOf(request, 'id'), read(ActedOn, request.body)));
   });
   app.get('/api/switches', async (request, response) => {
     const channel = text(request.query.channel);

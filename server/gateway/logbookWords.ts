@@ -41,7 +41,7 @@ export function warningBecame(warning: Warning, switchWord: string): string {
   return `${outcomeWords(warning, switchWord)}${acknowledged}`;
 }
 
-function outcomeWords({ outcome, lead }: Warning, switchWord: string): string {
+function outcomeWords({ outcome, lead, acted }: Warning, switchWord: string): string {
   const after = lead === null ? '' : `: ${switchWord} after ${spanText(lead)}`;
   switch (outcome) {
     case 'open':
@@ -57,7 +57,7 @@ function outcomeWords({ outcome, lead }: Warning, switchWord: string): string {
     case 'unseen':
       return 'could not be seen: a gap in the span';
     case 'acted':
-      return 'acted on';
+      return `acted on${acted?.by ? ` by ${acted.by}` : ''}${acted?.text ? `: ${acted.text}` : ''}`;
   }
 }
 

@@ -28,6 +28,8 @@ const STATES: WatchState['state'][] = [
   'unacknowledged',
   'acknowledged',
   'returned to normal, unacknowledged',
+  'latched, unacknowledged',
+  'latched, acknowledged',
   'shelved',
   'out of service',
 ];

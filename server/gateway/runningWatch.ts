@@ -1,6 +1,6 @@
 import { Decoder, Encoder } from 'cbor-x';
 import type { Model } from '../../shared-types/model.ts';
-import type { SwitchEvent, Warning } from '../../shared-types/warning.ts';
+import type { ActedOn, LogEntry, SwitchEvent, Warning } from '../../shared-types/warning.ts';
 import type { WatchAction, WatchState } from '../../shared-types/watch.ts';
 import type { StoredWatch, WatchProgress } from '../store/store.ts';
 import {
@@ -13,7 +13,9 @@ import type { Frame, Happening, Steps, Watch, WatchSettings, WatchSnapshot } fro
 import { type Alarm, type AlarmEvent, alarmAfter, alarmStateOf, shelfIsOver } from './alarmState.ts';
 import type { Channels } from './channels.ts';
 import type { Journal } from './journal.ts';
-import { createTally, liveScore, tallySwitch, tallyWarning } from './liveScore.ts';
+import { liveScore } from './liveScore.ts';
+import { createTraceBuffer } from './traceBuffer.ts';
+import { createWatchBook } from './watchBook.ts';
 
 /** A watch as its settings are stored: JSON. */
 export interface WatchMemo {
@@ -66,6 +68,8 @@ export interface RunningWatch {
   /** once a second or so: shelves that end, spans that run out, the grade */
   tick(): void;
   act(action: WatchAction): void;
+  /** says that a warning was acted on, or takes it back; null: there is no such warning */
+  actOn(warning: number, said: ActedOn): Warning | null;
   /** `why` for the log */
   setUse(use: WatchState['use'], why?: string): void;
   /** marks or conditions changed: from now on they are as they are now */
@@ -80,40 +84,12 @@ export interface RunningWatch {
   state(): WatchState;
 }
 
+type LogKind = LogEntry['kind'];
+
 const encoder = new Encoder({ useRecords: false });
 const decoder = new Decoder({ mapsAsObjects: true, useRecords: false });
 
-/** Warnings kept in memory of each watch, to know them again in a replay and to settle them. */
-const WARNINGS_KEPT = 2000;
-
 export const readCheckpoint = (bytes: Uint8Array): Checkpoint => decoder.decode(bytes) as Checkpoint;
-
-/** A trace on its way to the store: grows, is emptied once a second. */
-function createTraceBuffer() {
-  let times = new Float64Array(1024);
-  let values = new Float64Array(1024);
-  let count = 0;
-  return {
-    add(steps: Steps) {
-      if (count + steps.count > times.length) {
-        const length = Math.max(2 * times.length, count + steps.count);
-        const [longerTimes, longerValues] = [new Float64Array(length), new Float64Array(length)];
-        longerTimes.set(times.subarray(0, count));
-        longerValues.set(values.subarray(0, count));
-        times = longerTimes;
-        values = longerValues;
-      }
-      times.set(steps.time.subarray(0, steps.count), count);
-      values.set(steps.value.subarray(0, steps.count), count);
-      count += steps.count;
-    },
-    empty() {
-      const trace = count === 0 ? null : { times: times.slice(0, count), values: values.slice(0, count) };
-      count = 0;
-      return trace;
-    },
-  };
-}
 
 /**
  * Runs one watch: pushes frames into it, makes warnings, switches, log entries and alarm states of what it says, and
@@ -144,51 +120,32 @@ export function createRunningWatch(
   let gate = createLeftOutGate(wanted, checkpoint?.gate);
   const happenings: Happening[] = [];
   const trace = createTraceBuffer();
-  const warnings = new Map<number, Warning>();
-  const switchesToldAt = new Set<number>();
-  let tally = createTally();
+  const book = createWatchBook(known);
   let snapshotBytes: Uint8Array | null = null;
   let dirty = false;
   let value: number | null = null;
   let at: number | null = null;
-  let spanEnd = Number.NEGATIVE_INFINITY;
   let grade: WatchState['grade'] = null;
   let graded = false;
 
-  const remember = (warning: Warning) => {
-    warnings.set(warning.at, warning);
-    if (warning.outcome === 'open') spanEnd = Math.max(spanEnd, warning.to);
-    if (warnings.size > WARNINGS_KEPT) warnings.delete(warnings.keys().next().value!);
-  };
-  for (const warning of known.warnings) {
-    remember(warning);
-    tallyWarning(tally, warning, 1);
-  }
-  for (const event of known.switches) {
-    switchesToldAt.add(event.at);
-    tallySwitch(tally, event);
-  }
-
   const save = () =>
     around.save({ watch: memo.watch, settings: JSON.stringify(memo), snapshot: snapshotBytes });
-  const apply = (event: AlarmEvent) => {
+  /** false: nothing changed */
+  const apply = (event: AlarmEvent): boolean => {
     const before = memo.alarm;
     memo.alarm = alarmAfter(before, event);
-    if (memo.alarm === before) return;
+    if (memo.alarm === before) return false;
     save();
     around.touch(memo.watch);
+    return true;
   };
-  const log = (
-    kind: Parameters<Journal['log']>[0]['kind'],
-    text: string,
-    channel: string | null = null,
-    by: string | null = null,
-  ) => around.journal.log({ kind, channel, watch: memo.watch, by, text });
+  const log = (kind: LogKind, text: string, channel: string | null = null, by: string | null = null) =>
+    around.journal.log({ kind, channel, watch: memo.watch, by, text });
 
   const channelNow = () => around.channels.time(memo.channels[0]!, around.serverTime());
 
   const warn = (happening: Extract<Happening, { kind: 'warning' }>) => {
-    if (warnings.has(happening.at) || !rule) return;
+    if (!rule || book.warningAt(happening.at) !== undefined) return;
     const now = Math.max(
       channelNow() ?? happening.at,
       around.channels.newest(memo.channels[0]!) ?? happening.at,
@@ -214,27 +171,19 @@ export function createRunningWatch(
       acknowledgedBy: null,
       quiet: now > from,
     };
-    remember(warning);
-    tallyWarning(tally, warning, 1);
+    book.issue(warning);
     around.journal.issue(warning);
     if (now <= to && memo.use === 'in use') apply({ kind: 'warning', id: warning.id, trigger });
   };
 
   const settle = (happening: Extract<Happening, { kind: 'graded' }>) => {
-    const warning = warnings.get(happening.at);
-    if (warning?.outcome !== 'open') return;
-    tallyWarning(tally, warning, -1);
-    warning.outcome = happening.outcome;
-    warning.switchAt = happening.switchAt;
-    warning.lead = happening.lead;
-    tallyWarning(tally, warning, 1);
+    const warning = book.settle(happening);
+    if (warning === null) return;
     around.journal.change(warning);
+    overUnlessOpen(happening.at);
   };
 
   const switched = (happening: Extract<Happening, { kind: 'switch' }>) => {
-    if (memo.alarm.active && happening.at >= spanEnd - (rule?.horizon ?? 0)) over();
-    if (switchesToldAt.has(happening.at)) return;
-    switchesToldAt.add(happening.at);
     const { kind: _, warningAt, ...told } = happening;
     const event: SwitchEvent = {
       ...told,
@@ -242,15 +191,14 @@ export function createRunningWatch(
       watch: memo.watch,
       channel: settings.regimeChannel ?? memo.channels[0]!,
       loggedAt: around.serverTime(),
-      warning: warningAt === null ? null : (warnings.get(warningAt)?.id ?? null),
+      warning: warningAt === null ? null : (book.warningAt(warningAt)?.id ?? null),
     };
-    tallySwitch(tally, event);
-    around.journal.noteSwitch(event);
+    if (book.meet(event)) around.journal.noteSwitch(event);
   };
 
-  const over = () => {
-    spanEnd = Number.NEGATIVE_INFINITY;
-    apply({ kind: 'over' });
+  /** The condition is over when no warning is open any more, or all spans have passed by `now` (channel time). */
+  const overUnlessOpen = (now: number) => {
+    if (memo.alarm.active && !(now <= book.openUntil())) apply({ kind: 'over' });
   };
 
   const tell = (happening: Happening) => {
@@ -287,7 +235,7 @@ export function createRunningWatch(
     const newest = steps.value[steps.count - 1]!;
     value = Number.isNaN(newest) ? null : newest;
     at = steps.newest[steps.count - 1]!;
-    if (memo.alarm.active && at > spanEnd) over();
+    overUnlessOpen(at);
   };
 
   const updateGrade = () => {
@@ -295,7 +243,7 @@ export function createRunningWatch(
     grade =
       rule === null || model.regime === null
         ? null
-        : liveScore(tally, {
+        : liveScore(book.tally, {
             seconds: watch.watchedSeconds(),
             covered: watch.coveredSeconds(),
             interval: model.interval,
@@ -313,18 +261,28 @@ export function createRunningWatch(
     gate: gate.state(),
   });
 
-  const acknowledge = (action: Extract<WatchAction, { action: 'acknowledge' }>) => {
-    const time = around.serverTime();
-    let count = 0;
-    for (const warning of warnings.values()) {
-      if (warning.acknowledgedAt !== null || warning.id > (action.upTo ?? Number.POSITIVE_INFINITY)) continue;
-      warning.acknowledgedAt = time;
-      warning.acknowledgedBy = action.by;
-      around.journal.change(warning);
-      count++;
-    }
-    log('acknowledged', `${count} warning${count === 1 ? '' : 's'} acknowledged`, null, action.by);
-    apply({ kind: 'acknowledge', ...(action.upTo === undefined ? {} : { upTo: action.upTo }) });
+  const acknowledge = ({
+    upTo = Number.POSITIVE_INFINITY,
+    by,
+  }: {
+    upTo?: number | undefined;
+    by: string;
+  }) => {
+    const covered = book.acknowledge(upTo, around.serverTime(), by);
+    for (const warning of covered) around.journal.change(warning);
+    if (covered.length > 0)
+      log(
+        'acknowledged',
+        `${covered.length} warning${covered.length === 1 ? '' : 's'} acknowledged`,
+        null,
+        by,
+      );
+    apply({ kind: 'acknowledge', upTo });
+  };
+
+  /** Applies what a person asked for and logs it, once: a second click changes nothing and is not logged. */
+  const obey = (event: AlarmEvent, kind: LogKind, text: string, by: string) => {
+    if (apply(event)) log(kind, text, null, by);
   };
 
   /** the watched channels and those that conditions read */
@@ -373,30 +331,60 @@ export function createRunningWatch(
         apply({ kind: 'unshelve' });
       }
       const now = channelNow();
-      if (memo.alarm.active && now !== null && now > spanEnd) over();
+      if (now !== null) overUnlessOpen(now);
       if (!graded) updateGrade();
     },
     act(action) {
+      const { by } = action;
       switch (action.action) {
         case 'acknowledge':
           return acknowledge(action);
-        case 'shelve':
-          log('shelved', `shelved for ${action.seconds} s: ${action.reason}`, null, action.by);
-          return apply({
-            kind: 'shelve',
-            until: around.serverTime() + action.seconds,
-            reason: action.reason,
-          });
+        case 'reset':
+          return obey({ kind: 'reset' }, 'latch', 'reset', by);
+        case 'latch': {
+          const text = action.on ? 'latches from now on: stays until it is reset' : 'latches no longer';
+          return obey({ kind: 'latch', on: action.on }, 'latch', text, by);
+        }
+        case 'shelve': {
+          const { seconds, reason } = action;
+          const until = around.serverTime() + seconds;
+          return obey(
+            { kind: 'shelve', until, reason, by },
+            'shelved',
+            `shelved for ${seconds} s: ${reason}`,
+            by,
+          );
+        }
         case 'unshelve':
-          log('unshelved', 'taken off the shelf', null, action.by);
-          return apply({ kind: 'unshelve' });
-        case 'take out of service':
-          log('out of service', `taken out of service: ${action.reason}`, null, action.by);
-          return apply({ kind: 'take out of service', reason: action.reason });
+          return obey({ kind: 'unshelve' }, 'unshelved', 'taken off the shelf', by);
+        case 'take out of service': {
+          const { reason } = action;
+          const text = `taken out of service: ${reason}`;
+          return obey({ kind: 'take out of service', reason, by }, 'out of service', text, by);
+        }
         case 'return to service':
-          log('in service', 'returned to service', null, action.by);
-          return apply({ kind: 'return to service' });
+          return obey({ kind: 'return to service' }, 'in service', 'returned to service', by);
       }
+    },
+    actOn(id, said) {
+      const known = book.warning(id);
+      if (known === undefined) return null;
+      const warning = book.act(id, said, around.serverTime());
+      if (warning === null) return known;
+      const what = said.text === '' ? '' : `: ${said.text}`;
+      log(
+        'acted',
+        said.acted ? `warning ${id} was acted on${what}` : `warning ${id} was not acted on after all`,
+        warning.channels[0]!,
+        said.by,
+      );
+      graded = false;
+      // whoever acted on it has seen it
+      if (said.acted && warning.acknowledgedAt === null) acknowledge({ upTo: id, by: said.by });
+      around.journal.change(warning);
+      overUnlessOpen(warning.at);
+      around.touch(memo.watch);
+      return warning;
     },
     setUse(use, why) {
       if (use === memo.use) return;
@@ -406,7 +394,7 @@ export function createRunningWatch(
         wanted = watch.wants();
         gate = createLeftOutGate(wanted);
         readLeftOut();
-        tally = createTally();
+        book.beginAnew();
         memo.gradeSince = null;
       }
       memo.use = use;
@@ -416,11 +404,10 @@ export function createRunningWatch(
       around.touch(memo.watch);
     },
     delivered(id) {
-      for (const warning of warnings.values()) {
-        if (warning.id !== id || warning.deliveredAt !== null) continue;
-        warning.deliveredAt = around.serverTime();
-        around.journal.change(warning);
-      }
+      const warning = book.warning(id);
+      if (warning === undefined || warning.deliveredAt !== null) return;
+      warning.deliveredAt = around.serverTime();
+      around.journal.change(warning);
     },
     progress() {
       if (!dirty) return null;
@@ -442,6 +429,8 @@ export function createRunningWatch(
         state: alarmStateOf(memo.alarm),
         shelvedUntil: setAside?.kind === 'shelved' ? setAside.until : null,
         reason: setAside?.reason ?? null,
+        setAsideBy: setAside?.by || null,
+        latching: memo.alarm.latching ?? false,
         trigger,
         window: model.delays * model.interval,
         delays: model.delays,

@@ -1,4 +1,5 @@
 import type { Model, ModelSummary } from '../../shared-types/model.ts';
+import type { ActedOn, Warning } from '../../shared-types/warning.ts';
 import {
   NewWatch,
   type NewWatchToSend,
@@ -48,6 +49,8 @@ export interface Watches {
   /** stores a model under its name, or under a free one when that name has another content; returns the name */
   addModel(json: string): Promise<string>;
   act(watch: string, action: WatchAction): WatchState;
+  /** says that a warning was acted on, or takes it back */
+  actOn(warning: number, said: ActedOn): Warning;
   setUse(watch: string, use: WatchState['use']): WatchState;
   delivered(watch: string, warning: number): void;
   /** marks or conditions changed */
@@ -208,7 +211,7 @@ export function createWatches(needs: WatchesNeeds): Watches {
       channels: wanted.channels,
       reaction: wanted.reaction,
       use: wanted.use,
-      alarm: NO_ALARM,
+      alarm: wanted.latching ? { ...NO_ALARM, latching: true } : NO_ALARM,
       gradeSince: null,
     };
     let watch: RunningWatch;
@@ -285,6 +288,17 @@ export function createWatches(needs: WatchesNeeds): Watches {
       const watch = get(id);
       watch.act(action);
       return watch.state();
+    },
+    actOn(id, said) {
+      for (const watch of running.values()) {
+        const warning = watch.actOn(id, said);
+        if (warning !== null) return { ...warning };
+      }
+      throw new Refused(
+        404,
+        'NO_SUCH_WARNING',
+        `there is no warning ${id} among the last ones of the running watches; GET /api/warnings lists them`,
+      );
     },
     setUse(id, use) {
       const watch = get(id);

@@ -1,4 +1,4 @@
-import type { SwitchOutcome, WarningOutcome } from '../../shared-types/warning.ts';
+import type { GradedOutcome, SwitchOutcome } from '../../shared-types/warning.ts';
 
 /**
  * What became of warnings and switches, in whole grid steps: with a a warning's `at`, e a switch, M the least lead and
@@ -31,7 +31,7 @@ export interface Stretch {
 }
 
 export interface GradedWarning {
-  outcome: WarningOutcome;
+  outcome: GradedOutcome;
   /** the switch that settled it (seconds) and how long after the warning it came; null for false, open and unseen */
   switchAt: number | null;
   lead: number | null;

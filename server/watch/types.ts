@@ -1,5 +1,5 @@
 import type { Model } from '../../shared-types/model.ts';
-import type { SwitchOutcome, WarningOutcome } from '../../shared-types/warning.ts';
+import type { GradedOutcome, SwitchOutcome } from '../../shared-types/warning.ts';
 import type { Likeness, RegimeRule, Sight, WatchRule } from '../../shared-types/watch.ts';
 
 /** Samples of one channel in time order. `times` null: sample i is at t0 + i·dt. NaN in `values`: no sample there. */
@@ -35,7 +35,7 @@ export type Happening =
       threshold: number;
     }
   /** a warning's outcome is settled; `switchAt` and `lead` for true, repeat and late ones */
-  | { kind: 'graded'; at: number; outcome: WarningOutcome; switchAt: number | null; lead: number | null }
+  | { kind: 'graded'; at: number; outcome: GradedOutcome; switchAt: number | null; lead: number | null }
   /** a switch is confirmed; `warningAt` and `lead` name the first warning that covers it */
   | {
       kind: 'switch';

@@ -59,6 +59,8 @@ export function watch(changes: Partial<WatchState> = {}): WatchState {
     state: 'normal',
     shelvedUntil: null,
     reason: null,
+    setAsideBy: null,
+    latching: false,
     trigger: false,
     window: 8,
     delays: 20,
