@@ -78,7 +78,7 @@ it('pages that never read hold up neither ingest nor each other, and take no mem
 
 it('a producer that never reads its acknowledgements is hung up on before they fill the memory', async () => {
   const folder = temporaryFolder();
-  const server = await serve(folder, { ingestWindow: 100_000 });
+  const server = await serve(folder, { ingestWindow: 100_000, fastestFrames: 1_000_000 });
   const socket = await open(server.port, '/ingest', INGEST_PROTOCOL);
   const names = Array.from(
     { length: 200 },
@@ -94,7 +94,7 @@ it('a producer that never reads its acknowledgements is hung up on before they f
   let seq = 0;
   const isGone = async () => !(await api<ChannelState[]>(server.port, '/api/channels')).json[0]!.connected;
   const began = performance.now();
-  while (!closed && performance.now() - began < 30_000) {
+  while (!closed && performance.now() - began < 100_000) {
     for (const channel of names) socket.send(JSON.stringify({ channel, seq, t0: seq, dt: 1, values: [seq] }));
     seq++;
     await new Promise((resolve) => setTimeout(resolve, 12));
@@ -110,7 +110,7 @@ it('a producer that never reads its acknowledgements is hung up on before they f
   const cost = missingAndTwice(values, next);
   report({ tried: 'a producer that never reads', acknowledged: next, ...cost, 'frames sent': seq });
   expect(cost).toEqual({ lost: 0, twice: 0 });
-}, 60_000);
+}, 150_000);
 
 it('a producer whose cable is pulled comes back at once under its run, and loses nothing', async () => {
   const folder = temporaryFolder();
