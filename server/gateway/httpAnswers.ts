@@ -10,12 +10,16 @@ import { Refused } from './watches.ts';
 
 const encoder = new Encoder({ useRecords: false });
 
+/** The phrase of a status as RFC 9110 has it; Node's own of 413 is the older one. */
+const titleOf = (status: number): string =>
+  status === 413 ? 'Content Too Large' : (STATUS_CODES[status] ?? 'Error');
+
 /**
  * The body of a problem by RFC 9457: of no type of its own (4.2.1), so its title is the status's; `code` is the stable
  * name of what went wrong.
  */
 export const problemJson = (status: number, detail: string, code: string): string =>
-  JSON.stringify({ type: 'about:blank', title: STATUS_CODES[status] ?? 'Error', status, detail, code });
+  JSON.stringify({ type: 'about:blank', title: titleOf(status), status, detail, code });
 
 /** Answers with a problem. */
 export function problem(response: Response, status: number, detail: string, code: string): void {

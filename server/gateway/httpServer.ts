@@ -60,8 +60,9 @@ export function createHttpServer(app: RequestListener, tls: Tls | null, most: nu
   server.setTimeout(IDLE_MILLISECONDS);
   server.on('clientError', answerBroken);
   server.on('checkExpectation', (_request: IncomingMessage, response: ServerResponse) => {
-    response.writeHead(417, { 'Content-Type': 'application/problem+json' });
-    response.end(problemJson(417, 'only Expect: 100-continue is understood; leave it out', 'BAD_REQUEST'));
+    const body = problemJson(417, 'only Expect: 100-continue is understood; leave it out', 'BAD_REQUEST');
+    response.writeHead(417, { 'Content-Type': 'application/problem+json', 'Content-Length': body.length });
+    response.end(body);
   });
   return server;
 }

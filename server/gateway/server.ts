@@ -184,7 +184,7 @@ export async function startServer(options: ServerOptions): Promise<RunningServer
     each.on('upgrade', (request: IncomingMessage, socket: Duplex, head: Buffer) =>
       takeUpgrade(request, socket, head, { check, access, doors, log: seldom }),
     );
-  serveProducers(hub, ingest, { log: seldom, monotonic });
+  const takeNoMore = serveProducers(hub, ingest, { log: seldom, monotonic });
   let port = 0;
   try {
     port = await listening(http, options.port, listen);
@@ -216,7 +216,7 @@ export async function startServer(options: ServerOptions): Promise<RunningServer
     http.close();
     inner.close();
     await Promise.all([plays.close(), rehearsals.close()]);
-    for (const socket of ingest.clients) socket.pause();
+    takeNoMore();
     note(`${program} stopped`);
     metrics.close();
     await hub.close();

@@ -20,7 +20,7 @@ export interface ServerClock {
 
 /** What differs by more was set, not slewed. */
 const STEP_SECONDS = 1;
-/** A clock under NTP is slewed no faster than this (RFC 5905, 11.3: PHI and the tolerance are below it): 500 ppm. */
+/** A clock under NTP is slewed no faster than this (RFC 5905, A.1.1: MAXFREQ, 500 ppm). */
 const FOLLOWING = 500e-6;
 
 export const machineClock: ClockSources = {

@@ -87,8 +87,13 @@ function reading(
   };
 }
 
-/** Producers. */
-export function serveProducers(hub: Hub, sockets: WebSocketServer, told: Told): void {
+/**
+ * Producers.
+ *
+ * @returns called when the server stops: from then on nothing is taken, so that all that was can be acknowledged
+ */
+export function serveProducers(hub: Hub, sockets: WebSocketServer, told: Told): () => void {
+  let taking = true;
   sockets.on('connection', (socket: WebSocket, request: IncomingMessage, identity: Identity) => {
     tellOf('producer', socket, request, identity, told.log);
     const noteRead = reading(socket, hub, request.socket.remoteAddress ?? '', told);
@@ -102,12 +107,16 @@ export function serveProducers(hub: Hub, sockets: WebSocketServer, told: Told): 
       (channel) => mayFeed(identity, channel),
     );
     socket.on('message', (data: Buffer, binary) => {
+      if (!taking) return;
       noteRead(data.length);
       session.message(binary ? data : data.toString('utf8'), hub.now().server);
     });
     socket.on('error', () => {});
     socket.on('close', () => session.end());
   });
+  return () => {
+    taking = false;
+  };
 }
 
 /** Pages. */
