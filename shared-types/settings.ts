@@ -1,4 +1,5 @@
 import { z } from 'zod';
+import { Receivers } from './delivery.ts';
 
 /** `settings.json` in the data folder; every key may be left out, and a key that is not one of these is refused. */
 export const Settings = z.strictObject({
@@ -32,5 +33,9 @@ export const Settings = z.strictObject({
   fastestBytes: z.number().positive().default(64_000_000),
   /** a channel whose times differ from the server's clock by more than this is said to have a wrong clock, seconds */
   clockTolerance: z.number().positive().default(5),
+  /** where warnings go besides the pages */
+  receivers: Receivers.default([]),
+  /** what CloudEvents name as their source, an address that stands for this server; null: made of the machine's name */
+  eventSource: z.string().min(1).max(300).nullable().default(null),
 });
 export type Settings = z.infer<typeof Settings>;

@@ -5,6 +5,7 @@ import { createGroupCommit } from './groupCommit.ts';
 import { claimFolder } from './lock.ts';
 import { createLogbook } from './logbook.ts';
 import { noteDamage, openDatabase, openDatabaseReader } from './openDatabase.ts';
+import { createOutbox } from './outbox.ts';
 import { createPruner } from './pruning.ts';
 import { createReadings, type Readings } from './readings.ts';
 import { createRecords } from './records.ts';
@@ -58,6 +59,7 @@ function storeOver(
   const logbook = createLogbook(database);
   const leftOut = createLeftOutRecords(database);
   const rehearsals = createRehearsalRecords(database);
+  const outbox = createOutbox(database);
   const readings = createReadings(database);
   const pruner = createPruner(database);
   const now = options.now ?? (() => Date.now() / 1000);
@@ -145,6 +147,11 @@ function storeOver(
     removeRehearsal: (id) => write(() => rehearsals.removeRehearsal(id)),
     rehearsals: () => read(() => rehearsals.rehearsals()),
     rehearsalResult: (id) => read(() => rehearsals.rehearsalResult(id)),
+    saveDelivery: (delivery) => write(() => outbox.saveDelivery(delivery)),
+    deliveries: (query) => read(() => outbox.deliveries(query)),
+    pendingDeliveries: () => read(() => outbox.pendingDeliveries()),
+    saveDelay: (delay) => write(() => outbox.saveDelay(delay)),
+    delay: (watch) => read(() => outbox.delay(watch)),
     prune: (rules) =>
       write(() => {
         tails.flush();

@@ -76,6 +76,20 @@ const MIGRATIONS: readonly string[] = [
   CREATE TABLE conditions (id INTEGER PRIMARY KEY AUTOINCREMENT, json TEXT NOT NULL) STRICT;
   CREATE TABLE rehearsals (id TEXT PRIMARY KEY, state TEXT NOT NULL, result BLOB NOT NULL) STRICT;
   `,
+  `
+  -- what receivers are sent; body and until only while it is pending
+  CREATE TABLE outbox (
+    id INTEGER PRIMARY KEY AUTOINCREMENT,
+    receiver TEXT NOT NULL, event TEXT NOT NULL,
+    warning INTEGER NOT NULL,
+    pending INTEGER NOT NULL,
+    json TEXT NOT NULL,
+    UNIQUE (receiver, event)
+  ) STRICT;
+  CREATE INDEX outbox_pending ON outbox (id) WHERE pending = 1;
+  CREATE INDEX outbox_by_warning ON outbox (warning);
+  CREATE TABLE delays (watch TEXT PRIMARY KEY, json TEXT NOT NULL) STRICT;
+  `,
 ];
 
 /** Version of the database this program writes. */

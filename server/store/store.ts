@@ -1,4 +1,5 @@
 import type { ChannelDescription, Columns } from '../../shared-types/channel.ts';
+import type { Delivery, MeasuredDelay } from '../../shared-types/delivery.ts';
 import type { Mark, StoredCondition } from '../../shared-types/rehearsal.ts';
 import type { LogEntry, SwitchEvent, Warning } from '../../shared-types/warning.ts';
 import type { LogbookQuery, LogbookRow } from './logbook.ts';
@@ -58,6 +59,24 @@ export interface StoredRehearsal {
   id: string;
   state: string;
   result: Uint8Array;
+}
+
+/** A message to a receiver as stored. */
+export interface StoredDelivery extends Delivery {
+  /** the CloudEvent to be sent, byte for byte the same each time; '' once it is settled */
+  body: string;
+  /** server clock, Unix seconds: sent later it would be of no use */
+  until: number;
+}
+
+/** Which deliveries are asked for. */
+export interface DeliveryQuery {
+  after?: number;
+  warning?: number;
+  receiver?: string;
+  most?: number;
+  /** the last `most` instead of the first */
+  newest?: boolean;
 }
 
 /** What one push of a watch leaves behind; written in one transaction with the frames queued before it. */
@@ -166,6 +185,19 @@ export interface Store extends StoreReader {
   /** in the order they were saved */
   rehearsals(): Promise<Omit<StoredRehearsal, 'result'>[]>;
   rehearsalResult(id: string): Promise<Uint8Array | null>;
+
+  /**
+   * A new message to a receiver (id 0: one is given) or a changed one. Returns its id, or null when a new one is known
+   * already: same receiver and same event is the same message.
+   */
+  saveDelivery(delivery: StoredDelivery): Promise<number | null>;
+  /** oldest first */
+  deliveries(query: DeliveryQuery): Promise<StoredDelivery[]>;
+  /** what is still to be sent */
+  pendingDeliveries(): Promise<StoredDelivery[]>;
+  /** the newest measured delay of a watch */
+  saveDelay(delay: MeasuredDelay): Promise<void>;
+  delay(watch: string): Promise<MeasuredDelay | null>;
 
   log(entry: Omit<LogEntry, 'id'>): Promise<number>;
   logEntries(query: { after?: number; most?: number; newest?: boolean }): Promise<LogEntry[]>;

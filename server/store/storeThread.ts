@@ -129,6 +129,11 @@ function remoteStore(call: Call, notices: readonly string[]): Store {
     rehearsals: true,
     rehearsalResult: true,
     prune: true,
+    saveDelivery: true,
+    deliveries: true,
+    pendingDeliveries: true,
+    saveDelay: true,
+    delay: true,
     close: true,
   };
   const remote = Object.fromEntries(

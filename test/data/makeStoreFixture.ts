@@ -1,12 +1,13 @@
 // Made store-version-1.db.gz: Foreshift 0.1.0 on Node 20.20, schema version 1, makeStoreFixture(an empty folder, the file), 2026-12-01.
 // Made store-version-2.db.gz: the same with schema version 2, 2026-12-01.
+// Made store-version-3.db.gz: the same with schema version 3 and a message that waits for its receiver, 2026-12-01.
 import { readFileSync, writeFileSync } from 'node:fs';
 import { join } from 'node:path';
 import { gzipSync } from 'node:zlib';
 import Database from 'better-sqlite3';
 import { openStore } from '../../server/store/openStore.ts';
 
-/** Writes the fixture of the current schema version: 25 frames of 100 samples, a watch, a warning, what is left out, a rehearsal. */
+/** Writes the fixture of the current schema version: 25 frames of 100 samples, a watch, a warning, what is left out, a rehearsal, a message to a receiver. */
 export async function makeStoreFixture(folder: string, out: string): Promise<void> {
   const store = openStore(folder, { commitEvery: 0.01 });
   await store.saveChannel({ channel: 'A', unit: 'K', label: '', interval: 0.5, low: null, high: null });
@@ -32,6 +33,10 @@ export async function makeStoreFixture(folder: string, out: string): Promise<voi
   await store.saveMark({ id: 0, channel: 'A', from: 1e9 + 5, to: null, why: 'calibration', text: 'new zero', by: 'me' });
   await store.saveCondition({ id: 0, channel: 'A', when: 'B', side: 'above', level: 2.5 });
   await store.saveRehearsal({ id: '1', state: '{"state":"done"}', result: Uint8Array.of(4, 5, 6) });
+  await store.saveDelivery({
+    id: 0, receiver: 'lamp', kind: 'issued', event: 'w/1000000000.1/issued', watch: 'w', warning: 1, madeAt: 1e9 + 0.2,
+    state: 'pending', attempts: 0, settledAt: null, text: '', body: '{"specversion":"1.0"}', until: 1e9 + 20,
+  });
   await store.close();
   const database = new Database(join(folder, 'foreshift.db'));
   database.pragma('journal_mode = DELETE');

@@ -248,27 +248,30 @@ function fixture(version: number) {
   return { folder, open: () => openStore(folder, options) };
 }
 
-test.each([1, 2])('a database of version %i opens, and its samples are what they were', async (version) => {
-  const { folder, open } = fixture(version);
-  const store = open();
-  expect(store.notices).toEqual([]);
-  const block = await store.samplesFrom('A', 0, 1e5);
-  expect(block.values).toEqual(
-    Float64Array.from({ length: 2500 }, (_, i) => (i === 1300 ? Number.NaN : (i % 97) / 8)),
-  );
-  expect(block.times).toEqual(Float64Array.from({ length: 2500 }, (_, i) => 1e9 + i * 0.5));
-  expect(await store.run('A', 'run 1')).toEqual({
-    next: 25,
-    digests: new Map(Array.from({ length: 25 }, (_, seq) => [seq, seq * 3])),
-  });
-  expect((await store.watches()).map((watch) => watch.watch)).toEqual(['w']);
-  expect((await store.warnings({})).map((warning) => warning.at)).toEqual([1e9 + 0.1]);
-  expect(existsSync(join(folder, 'foreshift.db'))).toBe(true);
-  await store.close();
-});
+test.each([1, 2, 3])(
+  'a database of version %i opens, and its samples are what they were',
+  async (version) => {
+    const { folder, open } = fixture(version);
+    const store = open();
+    expect(store.notices).toEqual([]);
+    const block = await store.samplesFrom('A', 0, 1e5);
+    expect(block.values).toEqual(
+      Float64Array.from({ length: 2500 }, (_, i) => (i === 1300 ? Number.NaN : (i % 97) / 8)),
+    );
+    expect(block.times).toEqual(Float64Array.from({ length: 2500 }, (_, i) => 1e9 + i * 0.5));
+    expect(await store.run('A', 'run 1')).toEqual({
+      next: 25,
+      digests: new Map(Array.from({ length: 25 }, (_, seq) => [seq, seq * 3])),
+    });
+    expect((await store.watches()).map((watch) => watch.watch)).toEqual(['w']);
+    expect((await store.warnings({})).map((warning) => warning.at)).toEqual([1e9 + 0.1]);
+    expect(existsSync(join(folder, 'foreshift.db'))).toBe(true);
+    await store.close();
+  },
+);
 
-test('a database of version 2 keeps what is left out and its rehearsals', async () => {
-  const store = fixture(2).open();
+test.each([2, 3])('a database of version %i keeps what is left out and its rehearsals', async (version) => {
+  const store = fixture(version).open();
   expect(await store.marks()).toEqual([
     { id: 1, channel: 'A', from: 1e9 + 5, to: null, why: 'calibration', text: 'new zero', by: 'me' },
   ]);
@@ -276,6 +279,16 @@ test('a database of version 2 keeps what is left out and its rehearsals', async 
   expect(await store.rehearsals()).toEqual([{ id: '1', state: '{"state":"done"}' }]);
   expect(await store.rehearsalResult('1')).toEqual(Uint8Array.of(4, 5, 6));
   await store.close();
+});
+
+test('a database of version 2 comes to have an outbox, and one of version 3 keeps what waits in its', async () => {
+  const older = fixture(2).open();
+  expect(await older.pendingDeliveries()).toEqual([]);
+  const newer = fixture(3).open();
+  const [waiting] = await newer.pendingDeliveries();
+  expect(waiting).toMatchObject({ receiver: 'lamp', event: 'w/1000000000.1/issued', until: 1e9 + 20 });
+  expect(await older.saveDelivery({ ...waiting!, id: 0 })).toBe(1);
+  await Promise.all([older.close(), newer.close()]);
 });
 
 test('a database of version 1 can be read before a server has brought it forward, with nothing left out', async () => {
