@@ -32,6 +32,15 @@ export function createToday(): Today {
   const none = element('p', 'none', 'No warning yet.');
   let known: PageState | null = null;
   let day = -1;
+  /** a row stays the same element while it says the same: somebody may be at its button */
+  let rows = new Map<number, { says: string; row: HTMLTableRowElement }>();
+  const rowFor = (state: PageState, id: number, today: number) => {
+    const warning = state.warnings.get(id)!;
+    const trigger = state.watches.get(warning.watch)?.trigger;
+    const says = JSON.stringify([warning, nameOf(state, warning.watch), trigger, Math.floor(today / 86400)]);
+    const before = rows.get(id);
+    return before?.says === says ? before : { says, row: rowOf(state, id, today) };
+  };
   return {
     root: element('section', 'grades', since, element('div', 'gradeWords', sentences, table, none)),
     update: (state, today) => {
@@ -58,9 +67,21 @@ export function createToday(): Today {
         .slice(0, ROWS);
       table.hidden = last.length === 0;
       none.hidden = last.length > 0;
-      body.replaceChildren(...last.map((warning) => rowOf(state, warning.id, today)));
+      rows = new Map(last.map(({ id }) => [id, rowFor(state, id, today)]));
+      const wanted = [...rows.values()].map(({ row }) => row);
+      if (wanted.length !== body.children.length || wanted.some((row, i) => row !== body.children[i]))
+        putInOrder(body, wanted);
     },
   };
+}
+
+/** Makes these rows the children of a table's body, moving none that is in its place: one that has the focus keeps it. */
+function putInOrder(body: HTMLElement, rows: readonly HTMLElement[]): void {
+  const kept = new Set<Element>(rows);
+  for (const child of [...body.children]) if (!kept.has(child)) child.remove();
+  rows.forEach((row, i) => {
+    if (body.children[i] !== row) body.insertBefore(row, body.children[i] ?? null);
+  });
 }
 
 /** What a watch is called on the page: by its channel where that is unmistakable. */

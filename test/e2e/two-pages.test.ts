@@ -1,0 +1,137 @@
+import type { Browser, Page } from 'playwright-core';
+import { afterAll, beforeAll, describe, expect, it } from 'vitest';
+import type { LogEntry, Warning } from '../../shared-types/warning.ts';
+import type { WatchState } from '../../shared-types/watch.ts';
+import {
+  type Built,
+  complaintsOf,
+  dataFolder,
+  findChromium,
+  getJson,
+  openBrowser,
+  startBuilt,
+  until,
+} from './support.ts';
+
+/** What one person does the other must see within this time (s). */
+const SEEN = 1;
+
+describe.runIf(findChromium() !== null)('two people at two pages', () => {
+  const folder = dataFolder();
+  let server: Built;
+  let browser: Browser;
+  const pages: Page[] = [];
+  const complaints: string[][] = [];
+
+  beforeAll(async () => {
+    server = await startBuilt(['--demo', '--port', '0', '--data', folder.path]);
+    browser = await openBrowser();
+    for (const person of ['Ada', 'Ben']) {
+      const context = await browser.newContext({ viewport: { width: 1440, height: 1000 } });
+      const page = await context.newPage();
+      complaints.push(complaintsOf(page));
+      await page.goto(`http://127.0.0.1:${server.port}/`);
+      await page.getByRole('heading', { name: 'Loop A' }).waitFor();
+      await page.evaluate((name) => localStorage.setItem('foreshift.by', name), person);
+      pages.push(page);
+    }
+  });
+
+  afterAll(async () => {
+    await browser?.close();
+    await server?.end('SIGTERM');
+    folder.remove();
+  });
+
+  const strip = (page: Page, name = 'Loop A') => page.locator(`section[aria-label="${name}"]`);
+  const badge = (page: Page, name?: string) => strip(page, name).locator('.badge').textContent();
+  const stateOf = async (name = 'Loop A') =>
+    (await getJson<WatchState[]>(server.port, '/api/watches')).find(({ channels }) => channels[0] === name)!;
+  const act = async (body: object) => {
+    const { watch } = await stateOf();
+    const response = await fetch(`http://127.0.0.1:${server.port}/api/watches/${watch}/actions`, {
+      method: 'POST',
+      headers: { 'content-type': 'application/json' },
+      body: JSON.stringify(body),
+    });
+    expect(response.status).toBe(200);
+  };
+  const asks = (page: Page, name?: string) =>
+    until('a warning waits for a person', async () => /unacknowledged/.test((await badge(page, name))!), 90);
+  const log = () => getJson<LogEntry[]>(server.port, '/api/log');
+
+  it('see within a second that one of them has acknowledged', async () => {
+    const [ada, ben] = pages as [Page, Page];
+    await act({ action: 'latch', on: true, by: 'Ada' });
+    await Promise.all([asks(ada), asks(ben)]);
+    await strip(ada).getByRole('button', { name: 'Acknowledge' }).click();
+    await until('the other page shows it', async () => !/▲ unacknowledged/.test((await badge(ben))!), SEEN);
+    expect(await badge(ben)).toBe(await badge(ada));
+  });
+
+  it('may click at once: it is acknowledged once', async () => {
+    const [ada, ben] = pages as [Page, Page];
+    const before = (await log()).filter(({ kind }) => kind === 'acknowledged').length;
+    await Promise.all([asks(ada, 'Loop B'), asks(ben, 'Loop B')]);
+    await Promise.all(
+      [ada, ben].map((page) => strip(page, 'Loop B').getByRole('button', { name: 'Acknowledge' }).click()),
+    );
+    await until('nobody is asked', async () => (await stateOf('Loop B')).state !== 'unacknowledged', SEEN);
+    const after = (await log()).filter(({ kind }) => kind === 'acknowledged').length;
+    expect(after - before).toBe(1);
+  });
+
+  it('have to reset an alarm that latches, once it is over', async () => {
+    const [ada, ben] = pages as [Page, Page];
+    await until('both are told', async () => /latches/.test((await strip(ben).textContent())!), SEEN);
+    await until(
+      'it is latched',
+      async () => {
+        const words = (await badge(ben))!;
+        // another warning may have come meanwhile
+        const ask = strip(ben).getByRole('button', { name: 'Acknowledge' });
+        if (/unacknowledged/.test(words)) await ask.click({ timeout: 1000 }).catch(() => {});
+        return /latched, acknowledged/.test(words);
+      },
+      90,
+    );
+    await strip(ada).getByRole('button', { name: 'Reset' }).click({ timeout: 5000 });
+    await until('it is let go there', async () => !/latched/.test((await badge(ben))!), SEEN);
+    expect((await log()).filter(({ kind, by }) => kind === 'latch' && by === 'Ada')).toHaveLength(2);
+    await act({ action: 'latch', on: false, by: 'Ada' });
+  });
+
+  it('see who shelved it and why, and either may take it off the shelf', async () => {
+    const [ada, ben] = pages as [Page, Page];
+    await strip(ada).click({ position: { x: 60, y: 60 } });
+    await ada.keyboard.press('s');
+    const dialog = ada.locator('dialog');
+    await dialog.getByLabel('Why').fill('heater being changed');
+    await dialog.getByLabel('By whom').fill('Ada');
+    await dialog.getByRole('button', { name: 'Shelve' }).click();
+    await until('it is shelved there', async () => (await badge(ben)) === '‖ shelved', SEEN);
+    expect(await strip(ben).locator('.spoken').textContent()).toMatch(/heater being changed \(by Ada\)/);
+    await strip(ben).getByRole('button', { name: 'Unshelve' }).click();
+    await until('it is back', async () => (await badge(ada)) !== '‖ shelved', SEEN);
+  });
+
+  it('can say that a warning was acted on, which the other sees, and take it back', async () => {
+    const [ada, ben] = pages as [Page, Page];
+    const row = ada.locator('.last tbody tr').nth(2);
+    const time = (await row.locator('td').first().textContent())!;
+    await row.getByRole('button', { name: /acted on/ }).click();
+    await ada.getByLabel('What was done').fill('heater trimmed');
+    await ada.getByRole('button', { name: 'It was acted on' }).click();
+    const there = ben.locator('.last tbody tr', { hasText: time }).filter({ hasText: 'heater trimmed' });
+    await there.waitFor({ timeout: 1000 * SEEN });
+    const acted = () =>
+      getJson<Warning[]>(server.port, '/api/warnings').then((all) =>
+        all.filter(({ outcome }) => outcome === 'acted'),
+      );
+    expect(await acted()).toMatchObject([{ acted: { by: 'Ada', text: 'heater trimmed' } }]);
+    await there.getByRole('button', { name: /not acted on/ }).click();
+    await ben.getByRole('button', { name: 'Take it back' }).click();
+    await until('it is taken back', async () => (await acted()).length === 0, SEEN);
+    expect(complaints).toEqual([[], []]);
+  });
+});
