@@ -150,9 +150,12 @@ export function channelRemarks(channel: ChannelState): string[] {
   }
   const offset = channel.clockOffset;
   if (offset !== null && Math.abs(offset) >= 1) {
-    remarks.push(
-      `its clock is ${spanText(Math.abs(offset))} ${offset > 0 ? 'behind' : 'ahead of'} the server’s`,
-    );
+    const by = spanText(Math.abs(offset));
+    if (offset < 0) remarks.push(`its clock is ${by} ahead of the server’s`);
+    // what comes late for a while is on its way; what stays late is a clock, or a way that long
+    else if (channel.clockWrong)
+      remarks.push(`its clock is ${by} behind the server’s, or its data come that late`);
+    else remarks.push(`its data come ${by} late`);
   }
   if (channel.refused > 0) {
     remarks.push(

@@ -36,6 +36,8 @@ export interface ChannelState extends ChannelDescription {
   silent: boolean;
   /** server clock minus channel time at arrival, seconds, smoothed; null for elapsed time (below 1e8) */
   clockOffset: number | null;
+  /** its clock, or how late its data come, is beyond what settings.json tolerates: by the least offset lately */
+  clockWrong?: boolean;
   /** samples stored; frames skipped by the producer; gaps (non-finite values or missing time) seen */
   samples: number;
   holes: number;

@@ -48,9 +48,10 @@ export function createSide(): Side {
       sayBadge(badge, channel, watch);
       const words = channelRemarks(channel);
       if (watch?.rule && channel.clockOffset !== null && channel.clockOffset >= watch.rule.leastLead) {
-        words.push(
-          `its data come ${spanText(channel.clockOffset)} late: that eats the least lead of ${spanText(watch.rule.leastLead)}`,
-        );
+        const late = `its data come ${spanText(channel.clockOffset)} late`;
+        const plain = words.indexOf(late);
+        if (plain !== -1) words.splice(plain, 1);
+        words.push(`${late}: that eats the least lead of ${spanText(watch.rule.leastLead)}`);
       }
       if (words.join() !== said) {
         said = words.join();

@@ -44,6 +44,7 @@ interface Channel {
   saturationPlace: number;
   saturationSum: number;
   clock: ClockOffset;
+  clockWrong: boolean;
   /** samples that arrived in second s of the monotonic clock, at s mod length */
   arrivals: { second: number; count: number }[];
   firstArrival: number | null;
@@ -77,6 +78,8 @@ export interface Channels {
   time(channel: string, serverTime: number): number | null;
   leastOffset(channel: string): number | null;
   restoreOffset(channel: string, least: number | null): void;
+  /** whether its clock is beyond what is tolerated */
+  noteClock(channel: string, wrong: boolean): void;
   /** the server's clock was set forwards by so many seconds */
   serverStepped(seconds: number): void;
   interval(channel: string): number | null;
@@ -103,6 +106,7 @@ function createChannel(description: ChannelDescription): Channel {
     saturationPlace: 0,
     saturationSum: 0,
     clock: createClockOffset(null),
+    clockWrong: false,
     arrivals: [],
     firstArrival: null,
     refused: 0,
@@ -201,6 +205,7 @@ function stateOf(channel: Channel, { monotonic }: Moment): ChannelState {
     connected: channel.connected > 0,
     silent: isSilent(channel, monotonic),
     clockOffset: elapsedTime ? null : channel.clock.smooth,
+    clockWrong: channel.clockWrong,
     samples: channel.samples,
     holes: channel.holes,
     gaps: channel.gaps,
@@ -292,6 +297,9 @@ export function createChannels(): Channels {
     restoreOffset(name, least) {
       const channel = channels.get(name);
       if (channel && channel.clock.least === null) channel.clock = createClockOffset(least);
+    },
+    noteClock(name, wrong) {
+      get(name).clockWrong = wrong;
     },
     serverStepped(seconds) {
       for (const { clock } of channels.values()) serverStepped(clock, seconds);

@@ -293,6 +293,8 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
 
   const tellOfClocks = () => {
     for (const { channel, wrong, offset, text } of newsOfClocks(channels, now())) {
+      channels.noteClock(channel, wrong);
+      touched$.next(`channel ${channel}`);
       const level = wrong ? 'warning' : 'notice';
       log({ level, event: 'channel clock', text, channel, seconds: offset });
       journal.log({ kind: 'server', channel, watch: null, by: null, text });

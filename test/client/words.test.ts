@@ -133,9 +133,19 @@ describe('states are said in words', () => {
     expect(remarks).toEqual([
       'silent since 14:30:12',
       'saturated: 20 of 100 samples at the sensor’s limit',
-      'its clock is 3.2 s behind the server’s',
+      'its data come 3.2 s late',
       '1 frame refused: not JSON',
     ]);
+  });
+
+  it('calls a clock wrong when it is ahead, or stays behind; what comes late for a while is late', () => {
+    expect(channelRemarks(channel({ clockOffset: -12 }))).toEqual([
+      'its clock is 12 s ahead of the server’s',
+    ]);
+    expect(channelRemarks(channel({ clockOffset: 40, clockWrong: true }))).toEqual([
+      'its clock is 40 s behind the server’s, or its data come that late',
+    ]);
+    expect(channelRemarks(channel({ clockOffset: 0.4 }))).toEqual([]);
   });
 });
 
