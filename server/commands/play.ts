@@ -21,7 +21,8 @@ Sends a recording as a live stream; ends once everything is acknowledged.
   --data DIR        data folder of a stored:NAME recording
   --json            one JSON document about what was sent
 
-RECORDING is a CSV file or stored:NAME.
+RECORDING is a CSV file or stored:NAME. A server that asks for a token is shown the one in FORESHIFT_TOKEN; a
+certificate of your own is trusted by NODE_EXTRA_CA_CERTS=FILE.
 
 example: foreshift play loop.csv --channel dT --pace 10 --to ws://127.0.0.1:4717/ingest
 `;

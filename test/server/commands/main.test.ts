@@ -36,7 +36,7 @@ describe('the program', () => {
   });
 
   it('has an example in the help of each command', async () => {
-    for (const command of ['watch', 'fit', 'rehearse', 'play', 'backup', 'restore']) {
+    for (const command of ['watch', 'fit', 'rehearse', 'play', 'backup', 'restore', 'token']) {
       const help = await run(command, '--help');
       expect(help.code, command).toBe(0);
       expect(help.out, command).toMatch(new RegExp(`example[\\s\\S]*foreshift ${command}`));

@@ -4,7 +4,10 @@ import { Decoder } from 'cbor-x';
 import { afterEach, expect, it } from 'vitest';
 import { type WebSocket, WebSocketServer } from 'ws';
 import { createProducer, type Producer, type ProducerState } from '../../../server/commands/producer.ts';
-import { until } from '../gateway/harness.ts';
+import { createAccess } from '../../../server/gateway/access.ts';
+import { createToken } from '../../../server/gateway/accessTokens.ts';
+import { serve, until } from '../gateway/harness.ts';
+import { temporaryFolder } from '../store/temporaryFolder.ts';
 
 const decoder = new Decoder({ mapsAsObjects: true, useRecords: false });
 const WINDOW = 4;
@@ -71,4 +74,36 @@ it('connects anew when the server has too many, and goes on where the server sta
   say({ error: 'too many', code: 'TOO_MANY_UNACKNOWLEDGED', channel: 'c', seq: 2 });
   await until(() => heard[1]?.length === WINDOW);
   expect(heard[1]).toEqual([2, 3, 4, 5]);
+});
+
+it('shows its token, and ends with the server’s own sentence when it is not let in', async () => {
+  const folder = temporaryFolder();
+  const token = createToken(folder, { name: 'rig', role: 'producer', channels: null }, new Date());
+  const access = createAccess({
+    folder,
+    now: () => Date.now() / 1000,
+    secure: false,
+    warn: expect.unreachable,
+  });
+  const { hub, port } = await serve(folder, {}, { access });
+  const open = (shown: string | null) =>
+    createProducer({
+      to: `ws://127.0.0.1:${port}/ingest`,
+      run: 'r',
+      channels: [{ channel: 'c' }],
+      token: shown,
+    });
+  producer = open(token);
+  producer.send('c', { t0: 0, dt: 1, values: Float64Array.of(1, 2) });
+  await producer.idle();
+  expect(hub.channels.samples('c')).toBe(2);
+  for (const [shown, said] of [
+    [null, /refused this producer: this server asks for a token/],
+    ['another', /refused this producer: there is no such token here/],
+  ] as const) {
+    const refused = open(shown);
+    refused.send('c', { t0: 9, dt: 1, values: Float64Array.of(1) });
+    await expect(refused.idle()).rejects.toThrow(said);
+    await refused.close();
+  }
 });
