@@ -11,7 +11,7 @@ import {
 import { dirname, join } from 'node:path';
 import Database from 'better-sqlite3';
 import { claimFolder } from './lock.ts';
-import { DATABASE_FILE, openDatabaseReader } from './openDatabase.ts';
+import { DATABASE_FILE, inOneLine, openDatabaseReader } from './openDatabase.ts';
 import { SCHEMA_VERSION, schemaVersion } from './schema.ts';
 import { StoreError } from './storeError.ts';
 
@@ -179,7 +179,7 @@ function refuseDamaged(database: Database.Database, file: string): void {
   if (found === 'ok') return;
   throw new StoreError(
     'DAMAGED',
-    `${file} is damaged (${String(found)}); use another file that foreshift backup made`,
+    `${file} is damaged (${inOneLine(String(found))}); use another file that foreshift backup made`,
   );
 }
 

@@ -124,7 +124,7 @@ function setAside(file: string): string {
   return aside;
 }
 
-/** SQLite heads a finding with a line of its own. */
-const inOneLine = (found: string) => found.replace(/^\*\*\*.*\*\*\*\n/, '').replaceAll('\n', '; ');
+/** A finding of SQLite's own check as part of a sentence: it heads it with a line of its own. */
+export const inOneLine = (found: string) => found.replace(/^\*\*\*.*\*\*\*\n/, '').replaceAll('\n', '; ');
 
 const damage = (found: string) => Object.assign(new Error(found), { code: 'SQLITE_CORRUPT' });
