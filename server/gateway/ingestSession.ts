@@ -131,8 +131,10 @@ export function createIngestSession(doors: IngestDoors, limits: IngestLimits): I
         channel,
         seq,
       );
+    // what is not known any more may have been stored long ago
     const [oldest = Number.POSITIVE_INFINITY] = run.digests.keys();
-    if (known === undefined && seq > oldest)
+    const isForgetful = run.digests.size === 0 || run.digests.size >= DIGESTS_KEPT;
+    if (known === undefined && (seq > oldest || !isForgetful))
       return refuse(
         'TOO_LATE',
         `frame ${seq} comes after frame ${run.next - 1} and is a hole already; send the frames of a run in order`,
