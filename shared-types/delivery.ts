@@ -35,6 +35,9 @@ export const Receiver = z
   .refine(({ url, command }) => (url === undefined) !== (command === undefined), {
     message: 'a receiver has either a url or a command; name one of them',
   })
+  .refine(({ url }) => url === undefined || !/^https?:\/\/[^/?#]*@/i.test(url), {
+    message: 'an address is written without user and password: they would be in logs; use a secret',
+  })
   .refine(({ secretFile, secretVariable }) => secretFile === undefined || secretVariable === undefined, {
     message: 'a receiver has one secret; name secretFile or secretVariable, not both',
   })

@@ -36,6 +36,10 @@ export const Settings = z.strictObject({
   /** where warnings go besides the pages */
   receivers: Receivers.default([]),
   /** what CloudEvents name as their source, an address that stands for this server; null: made of the machine's name */
-  eventSource: z.string().min(1).max(300).nullable().default(null),
+  eventSource: z
+    .string()
+    .regex(/^[^\s"<>\\^`{|}]{1,300}$/, 'a source is a URI or a path without spaces')
+    .nullable()
+    .default(null),
 });
 export type Settings = z.infer<typeof Settings>;

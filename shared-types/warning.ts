@@ -104,7 +104,9 @@ export interface LogEntry {
     /** a stretch or a condition is left out, or no longer */
     | 'mark'
     | 'rehearsal'
-    | 'play';
+    | 'play'
+    /** what did not reach a receiver, and trials */
+    | 'delivery';
   channel: string | null;
   watch: string | null;
   by: string | null;

@@ -14,6 +14,7 @@ export const KINDS: readonly { id: string; name: string; kinds: readonly Logbook
   { id: 'likeness', name: 'likeness to the model', kinds: ['likeness'] },
   { id: 'marks', name: 'marks', kinds: ['mark'] },
   { id: 'models', name: 'models, watches', kinds: ['model', 'watch', 'rehearsal', 'play'] },
+  { id: 'delivery', name: 'delivery', kinds: ['delivery'] },
   { id: 'server', name: 'server', kinds: ['server'] },
 ];
 

@@ -7,6 +7,7 @@ import { parseArgs } from 'node:util';
 import { Settings } from '../../shared-types/settings.ts';
 import type { NewWatchToSend } from '../../shared-types/watch.ts';
 import { createAccess } from '../gateway/access.ts';
+import { openReceivers } from '../gateway/delivery/receivers.ts';
 import { inUrl, isLoopback } from '../gateway/hostCheck.ts';
 import type { Tls } from '../gateway/httpServer.ts';
 import { complaint } from '../gateway/ingestFrame.ts';
@@ -229,6 +230,7 @@ async function start(choice: Choice): Promise<RunningServer> {
   // A model that cannot be used is told before anything is started.
   if (choice.model) modelFromJson(choice.model.json);
   const settings = await readSettings(choice.data);
+  const receivers = await openReceivers(settings.receivers, choice.data, process.env, unixSeconds);
   const store = await createStoreThread(choice.data, { commitEvery: settings.commitEvery });
   const warn = (text: string) => choice.log({ level: 'warning', event: 'trouble', text });
   try {
@@ -237,6 +239,7 @@ async function start(choice: Choice): Promise<RunningServer> {
       listen: choice.listen,
       store,
       settings,
+      receivers,
       demo: choice.demo,
       program: programName(),
       createWatch,

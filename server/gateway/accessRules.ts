@@ -30,6 +30,7 @@ export const RULES: Readonly<Record<string, Rule>> = {
   'GET /api/models/:name/evidence': 'viewer',
   'GET /api/warnings': 'viewer',
   'POST /api/warnings/:id/acted': 'operator',
+  'GET /api/deliveries': 'viewer',
   'GET /api/switches': 'viewer',
   'GET /api/switches/:id/card': 'viewer',
   'GET /api/recordings': 'viewer',

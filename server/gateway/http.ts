@@ -8,6 +8,7 @@ import { NewWatch, WatchAction } from '../../shared-types/watch.ts';
 import { evidenceOf } from '../model/evidence.ts';
 import type { Access, Identity } from './access.ts';
 import { may } from './accessRules.ts';
+import { routeDeliveries } from './delivery/httpDeliveries.ts';
 import type { HostCheck } from './hostCheck.ts';
 import { gate, nameTheDoer, routeAccess } from './httpAccess.ts';
 import {
@@ -216,6 +217,7 @@ export function createHttpApp(hub: Hub, needs: HttpNeeds): express.Express {
   routeRecordingColumns(app, hub);
   routeRehearsals(app, hub, needs.rehearsals);
   routePlays(app, needs.plays);
+  routeDeliveries(app, hub);
   app.use(answerNothing(app));
   app.use(answerErrors(needs.log));
   return app;

@@ -7,6 +7,8 @@ import type { FrameToStore, Store } from '../store/store.ts';
 import { createChannelClocks } from './channelClocks.ts';
 import { type Channels, createChannels, type Moment } from './channels.ts';
 import { type Counts, createCounts } from './counts.ts';
+import { createDeliveries, type Deliveries } from './delivery/delivery.ts';
+import type { OpenReceiver } from './delivery/receivers.ts';
 import { createIngestSession, type IngestDoors, type IngestSession, type Refusal } from './ingestSession.ts';
 import { createJournal, type Journal } from './journal.ts';
 import { createKeeping } from './keeping.ts';
@@ -30,6 +32,7 @@ export interface Hub {
   /** marks and conditions */
   leftOut: LeftOutRegistry;
   journal: Journal;
+  deliveries: Deliveries;
   recorder: Recorder;
   store: Store;
   settings: Settings;
@@ -64,6 +67,8 @@ export interface HubNeeds {
   readModel(json: string): Model;
   warn(text: string): void;
   log?: Log;
+  /** where warnings go besides the pages */
+  receivers?: readonly OpenReceiver[];
 }
 
 /** A producer's hold on a channel. */
@@ -105,8 +110,36 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
   };
   const recorder = createRecorder(store, setTrouble);
   const newestWarning = (await store.warnings({ newest: true, most: 1 }))[0]?.id ?? 0;
-  const journal = createJournal(store, newestWarning, () => now().server, say, setTrouble);
+  const written = createJournal(store, newestWarning, () => now().server, say, setTrouble);
+  const journal: Journal = {
+    ...written,
+    issue(warning) {
+      written.issue(warning);
+      deliveries.issued(warning);
+    },
+    change(warning) {
+      written.change(warning);
+      deliveries.changed(warning);
+    },
+  };
   channels.load(await store.channels());
+  const deliveries = createDeliveries({
+    store,
+    journal,
+    receivers: needs.receivers ?? [],
+    source: settings.eventSource,
+    now: () => now().server,
+    channelTime: (channel) => channels.time(channel, now().server),
+    watch: (watch) => (watches.has(watch) ? watches.state(watch) : null),
+    delivered: (watch, warning) => watches.delivered(watch, warning),
+    acted(warning, by, text) {
+      try {
+        watches.actOn(warning, { acted: true, by, text });
+      } catch {
+        // it is so old that no running watch has it any more
+      }
+    },
+  });
   const leftOut = await createLeftOut({
     store,
     channels,
@@ -133,6 +166,7 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
   await watches.start();
   // a server killed again within a second must not catch up from the same place each time
   attempt(watches.saveProgress());
+  await deliveries.start();
   const keeping = createKeeping({
     store,
     settings,
@@ -307,6 +341,7 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
     counts,
     leftOut,
     journal,
+    deliveries,
     recorder,
     store,
     settings,
@@ -333,6 +368,7 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
     clockStepped: channels.serverStepped,
     async close() {
       await keeping.close();
+      await deliveries.close();
       await recorder.idle();
       await watches.saveProgress();
       await journal.idle();

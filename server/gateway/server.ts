@@ -8,6 +8,7 @@ import type { Store } from '../store/store.ts';
 import { type Access, type Identity, openAccess } from './access.ts';
 import { may } from './accessRules.ts';
 import type { Moment } from './channels.ts';
+import type { OpenReceiver } from './delivery/receivers.ts';
 import { createHostCheck, inUrl } from './hostCheck.ts';
 import { createHttpApp } from './http.ts';
 import { routesOf } from './httpRoutes.ts';
@@ -41,6 +42,8 @@ export interface ServerOptions {
   /** who may do what; left out: whoever can connect may do everything */
   access?: Access;
   tls?: Tls;
+  /** where warnings go besides the pages, as settings.json names them */
+  receivers?: readonly OpenReceiver[];
   /** names this server is reached by, beside this machine's own */
   names?: string[];
   /** left out: warnings go to `warn` */
@@ -125,6 +128,7 @@ export async function startServer(options: ServerOptions): Promise<RunningServer
     readModel: options.readModel,
     warn: options.warn,
     log: seldom,
+    receivers: options.receivers ?? [],
   });
   const note = (text: string) =>
     hub.journal.log({ kind: 'server', channel: null, watch: null, by: null, text });
