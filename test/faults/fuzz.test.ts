@@ -242,9 +242,13 @@ describe('files', () => {
     fc.assert(
       fc.property(fc.oneof(awkward, otherPart(whole)), (value) => {
         const parsed = Settings.safeParse(value);
-        if (!parsed.success) expect(parsed.error.issues[0]!.message.length).toBeGreaterThan(5);
-        else
-          for (const each of Object.values(parsed.data)) expect(each === null || Number(each) > 0).toBe(true);
+        if (!parsed.success) {
+          expect(parsed.error.issues[0]!.message.length).toBeGreaterThan(5);
+          return;
+        }
+        const { ingestWindow, largestFrame, commitEvery, recordingGap, keepFor, largestStore } = parsed.data;
+        for (const each of [ingestWindow, largestFrame, commitEvery, recordingGap, keepFor, largestStore])
+          expect(each === null || each > 0).toBe(true);
       }),
       runs(500),
     );
