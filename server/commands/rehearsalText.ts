@@ -4,7 +4,7 @@ import type { Interval, Score } from '../../shared-types/score.ts';
 import type { Rehearsal, RehearsedWarning } from '../rehearsal/rehearse.ts';
 import { counted, inUnit, percent, pluralOf, rateUnitOf, short, spanWords } from '../rehearsal/words.ts';
 
-/** Below this a recording has elapsed time, not the time of a clock. */
+/** A recording that begins below this has elapsed time, not the time of a clock. */
 const CLOCK_TIME = 1e8;
 
 /** After a search so many warnings are printed line by line; of a given watch all are what was asked for. */
@@ -32,7 +32,7 @@ export function jsonOfRehearsal(
     warnings: named(warnings),
     score: result.score,
     variables: byName(contenders.filter(({ kind }) => kind === 'variable')),
-    baselines: byName(contenders.filter((one) => isBaseline(one, settings))),
+    baselines: byName(contenders.filter(isBaseline)),
     settings: {
       model: model.name,
       channels: request.channels,
@@ -51,14 +51,8 @@ export function jsonOfRehearsal(
   };
 }
 
-/** The plain levels are baselines as well, except for the one that was chosen. */
-function isBaseline(
-  { kind, name }: Contender,
-  { variable, direction }: RehearsalResult['settings'],
-): boolean {
-  if (kind === 'baseline') return true;
-  return name.startsWith('level ') && !(variable === 'level' && name === `level ${direction}`);
-}
+/** The plain levels are variables of a watch and baselines as well. */
+const isBaseline = ({ kind, name }: Contender): boolean => kind === 'baseline' || name.startsWith('level ');
 
 /** Whether the verdict had to say that the model was fitted on what is judged. */
 const fittedOnJudged = (result: RehearsalResult): boolean => result.fittedOnJudged;
@@ -80,13 +74,7 @@ export function describeRehearsal(result: RehearsalResult, model: Model, { warni
     );
   }
   lines.push('', ...contenderLines(contenders), '');
-  lines.push(
-    ...warningLines(
-      warnings,
-      recordings.map(({ name }) => name),
-      tried > 1 ? MOST_LISTED : Number.POSITIVE_INFINITY,
-    ),
-  );
+  lines.push(...warningLines(warnings, recordings, tried > 1 ? MOST_LISTED : Number.POSITIVE_INFINITY));
   return `${lines.join('\n')}\n`;
 }
 
@@ -155,7 +143,7 @@ function shareWords({ skill, skillShare }: Score): string {
 
 function warningLines(
   warnings: readonly RehearsedWarning[],
-  recordings: readonly string[],
+  recordings: RehearsalResult['recordings'],
   most: number,
 ): string[] {
   if (warnings.length === 0) return ['no warnings'];
@@ -164,24 +152,24 @@ function warningLines(
   const rest = left === 0 ? '' : `, the last ${most} (--json has them all)`;
   const lines = [
     `${counted(warnings.length, 'warning')}${rest}:`,
-    'at                        value  outcome  lead     part',
+    'at                        value  outcome  lead       part',
   ];
   let recording = -1;
   for (const warning of shown) {
     if (recordings.length > 1 && warning.recording !== recording) {
-      lines.push(recordings[warning.recording]!);
+      lines.push(recordings[warning.recording]!.name);
       recording = warning.recording;
     }
     const lead = warning.lead === null ? '' : spanWords(warning.lead);
     lines.push(
-      `${timeText(warning.at).padEnd(24)} ${round(warning.value, 2).padStart(6)}  ${warning.outcome.padEnd(8)} ${lead.padEnd(8)} ${warning.part}`,
+      `${timeText(warning.at, recordings[warning.recording]!.from).padEnd(24)} ${round(warning.value, 2).padStart(6)}  ${warning.outcome.padEnd(8)} ${lead.padEnd(10)} ${warning.part}`,
     );
   }
   return lines;
 }
 
-const timeText = (time: number): string =>
-  time < CLOCK_TIME ? `${time.toFixed(3)} s` : new Date(time * 1000).toISOString();
+const timeText = (time: number, begins: number): string =>
+  begins < CLOCK_TIME ? `${time.toFixed(3)} s` : new Date(time * 1000).toISOString();
 
 const round = (value: number | null, digits: number): string =>
   value === null ? '–' : value.toFixed(digits).replace(/^-(0\.?0*)$/, '$1');

@@ -9,7 +9,7 @@ import { type GriddedRecording, gridRecording, regimeChannelOf, seriesOf } from 
 import { leftOutSeries } from './leftOut.ts';
 import { judgedFromTimes, scoredFromTime } from './parts.ts';
 import type { RehearsalTask, TaskSeries } from './task.ts';
-import { allOf, short, spanWords } from './words.ts';
+import { allOf, counted, short, spanWords } from './words.ts';
 
 /** A rehearsal's recordings on their grid, parted into what may be chosen on and what is judged. */
 export interface Prepared {
@@ -35,12 +35,14 @@ const SHORTEST_WINDOW = 4;
 /**
  * Puts a task's recordings on the grid, finds their switches and parts them.
  *
- * @throws InputError in a sentence: BAD_REGIME, SPANS, BAD_RULE, NO_SUCH_CHANNEL, NO_FULL_WINDOW, NO_SWITCH, NO_SWITCH_TO_TUNE,
- *         NO_SWITCH_TO_JUDGE
+ * @throws InputError in a sentence: BAD_REGIME, SPANS, BAD_RULE, NO_SUCH_CHANNEL, NO_VALUES, NOTHING_LEFT, NO_FULL_WINDOW,
+ *         NO_SWITCH, NO_SWITCH_TO_TUNE, NO_SWITCH_TO_JUDGE
  */
 export function prepareTask(task: RehearsalTask): Prepared {
   const { request, model } = task;
   const regime = readRegime(request.regime);
+  const counting = task.recordings.map(leftOutSeries);
+  checkValues(task, counting);
   const first = seriesOf(task.recordings[0]!.series, request.channels[0]!) as TaskSeries;
   const interval = model?.interval ?? task.interval ?? intervalOf(first);
   const gapIntervals = model?.gapIntervals ?? task.gapIntervals ?? 3;
@@ -54,7 +56,7 @@ export function prepareTask(task: RehearsalTask): Prepared {
     regime,
     regimeChannel: request.regimeChannel,
   };
-  const recordings = task.recordings.map((recording) => gridRecording(leftOutSeries(recording), settings));
+  const recordings = counting.map((series) => gridRecording(series, settings));
   checkWindows(task, recordings, model?.delays ?? SHORTEST_WINDOW);
   const judgedFrom = judgedFromTimes(recordings, request.tunePart);
   const scoredFrom = recordings.map((one, i) => scoredFromTime(one, judgedFrom[i]!, spans));
@@ -123,6 +125,32 @@ function checkRearm({ variable, threshold, rearm }: RehearsalRequest): void {
   );
 }
 
+/** Every channel that is read must be in every recording and have some value that counts. */
+function checkValues({ request, recordings }: RehearsalTask, counting: readonly TaskSeries[][]): void {
+  for (const channel of channelsRead(request)) {
+    recordings.forEach(({ name, series, leftOut }, i) => {
+      const raw = series.find((one) => one.channel === channel);
+      if (raw === undefined) {
+        throw new InputError(
+          'NO_SUCH_CHANNEL',
+          `the recording ${name} has no channel ${channel}, it has ${series.map((one) => one.channel).join(', ')}; name one of these`,
+        );
+      }
+      if (seriesOf(counting[i]!, channel).values.some(Number.isFinite)) return;
+      if (!raw.values.some(Number.isFinite)) {
+        throw new InputError(
+          'NO_VALUES',
+          `the recording ${name} has no value of ${channel} in ${counted(raw.values.length, 'sample')}, expected numbers; leave the recording out, or watch another channel`,
+        );
+      }
+      throw new InputError(
+        'NOTHING_LEFT',
+        `marks and conditions leave nothing of ${channel} in the recording ${name} (${counted(leftOut.length, 'stretch')} left out), expected some of it to count; withdraw a mark or a condition, or choose another recording`,
+      );
+    });
+  }
+}
+
 function checkWindows(
   { recordings }: RehearsalTask,
   gridded: readonly GriddedRecording[],
@@ -156,7 +184,7 @@ function checkSwitches(
   if (tuned === 0) {
     throw new InputError(
       'NO_SWITCH_TO_TUNE',
-      `${allOf(total, 'switch')} ${lie(total)} after the tuning part, so none lies in the tuning part, expected several to choose settings by; raise --tune-part or give longer recordings`,
+      `no switch lies in the tuning part (${allOf(total, 'switch')} ${total === 1 ? 'comes' : 'come'} later), expected several to choose settings by; raise --tune-part or give longer recordings`,
     );
   }
   const judged = recordings.reduce(
@@ -167,12 +195,10 @@ function checkSwitches(
   if (judged === 0) {
     throw new InputError(
       'NO_SWITCH_TO_JUDGE',
-      `${allOf(total, 'switch')} ${lie(total)} in the tuning part or within a horizon after it, so none is left to judge, expected at least 10; lower --tune-part or give longer recordings`,
+      `${allOf(total, 'switch')} ${total === 1 ? 'lies' : 'lie'} in the tuning part or within a horizon after it, so none is left to judge, expected at least 10; lower --tune-part or give longer recordings`,
     );
   }
 }
-
-const lie = (count: number): string => (count === 1 ? 'lies' : 'lie');
 
 function rangeWords({ request, recordings }: RehearsalTask): string {
   const channel = regimeChannelOf(readRegime(request.regime), request.regimeChannel, request.channels);

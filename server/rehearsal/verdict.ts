@@ -86,10 +86,9 @@ function noBetterWords({ score, variable, word }: VerdictTask, rival: Rival, tot
 /** What to do when a baseline is as good: of baselines a watch can have the level only. */
 function adviceWords({ variable, score, level }: VerdictTask, rival: Rival): string {
   if (isLevel(variable)) {
-    if (isLevel(rival.name) || rival.high >= 0) {
-      return 'Both are plain readings of the channel: the level chosen here can be watched as it is.';
-    }
-    return `The level chosen here is a plain reading too, and can be watched as it is; a limit on ${plainName(rival.name)}, set where the channel is read, would warn better.`;
+    return isLevel(rival.name) || rival.high >= 0
+      ? 'Neither needs a model: the level chosen here can be watched as it is.'
+      : `The level chosen here can be watched as it is, but going by ${plainName(rival.name)} warns better.`;
   }
   if (isLevel(rival.name)) {
     return 'Watch the level then: rehearse again with a plain level as what to watch (--variable level).';
@@ -98,7 +97,7 @@ function adviceWords({ variable, score, level }: VerdictTask, rival: Rival): str
   if (level !== null && level.skill >= score.skill!) {
     return `${limit}, but on the ${level.name}, whose skill is ${short(level.skill)}: rehearse again with a plain level as what to watch (--variable level).`;
   }
-  return `${limit}: read it off the channel itself, or watch the ${variable} for the skill it has.`;
+  return `${limit}: go by that itself, or watch the ${variable} for the skill it has.`;
 }
 
 /** "distance from the mean" of "distance from the mean rising". */

@@ -123,7 +123,7 @@ export function leadHistogram(result: RehearsalResult): Html {
   });
   const least = x.at(settings.leastLead);
   const median = score.lead.median;
-  const marks = html`<path class="least" d="M${least.toFixed(1)} ${AREA.top - 4}V${AREA.bottom}"/><text x="${least.toFixed(1)}" y="${AREA.top - 9}" text-anchor="middle" class="mark">least lead ${spanWords(settings.leastLead)}</text>${
+  const marks = html`<path class="least" d="M${least.toFixed(1)} ${AREA.top - 20}V${AREA.bottom}"/><text x="${Math.max(AREA.left + 30, least).toFixed(1)}" y="${AREA.top - 24}" text-anchor="middle" class="mark">least lead ${spanWords(settings.leastLead)}</text>${
     median === null
       ? null
       : html`<path class="median" d="M${(x.at(median) - 4.5).toFixed(1)} ${AREA.top - 8}h9l-4.5 8z"/>`

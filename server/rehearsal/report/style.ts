@@ -6,17 +6,17 @@ export const REPORT_STYLE = `
 *{box-sizing:border-box}
 html{background:var(--paper);color:var(--ink);font:14px/1.45 "Helvetica Neue",Helvetica,Arial,"Liberation Sans","Noto Sans",system-ui,sans-serif;font-variant-numeric:tabular-nums;-webkit-print-color-adjust:exact;print-color-adjust:exact}
 body{margin:0 auto;max-width:820px;padding:36px 28px 60px}
-@media print{html{font-size:9pt}h1{font-size:1.4em}body{max-width:none;padding:0}}
+@media print{html{font-size:9pt}h1{font-size:1.3em}body{max-width:none;padding:0}section{break-inside:avoid}.verdict{margin-top:12px}h2{margin-top:16px}}
 h1,h2,p,ul,dl,dd,figure{margin:0;padding:0}
 header{display:flex;justify-content:space-between;gap:24px;color:var(--soft);border-bottom:1px solid var(--edge);padding-bottom:6px}
-h1{font-size:1.65em;line-height:1.25;font-weight:600;margin:10px 0 10px;text-wrap:balance}
+h1{font-size:1.4em;line-height:1.3;font-weight:600;margin:12px 0 10px;text-wrap:pretty}
 .verdict{display:inline-block;border:1.5px solid currentColor;border-radius:2px;padding:1px 9px;font-weight:600;margin-top:22px}
-.lead{font-size:1.1em;max-width:46em}
+.lead{max-width:56em;text-wrap:pretty}
 h2{font-size:1em;font-weight:600;margin:26px 0 8px;border-bottom:1px solid var(--rule);padding-bottom:3px;break-after:avoid}
-.figures{display:flex;flex-wrap:wrap;gap:6px 34px;margin:20px 0 4px}
+.figures{display:flex;flex-wrap:wrap;justify-content:space-between;gap:6px 16px;margin:18px 0 4px}
 .figures dt{color:var(--soft)}
-.figures dd{font-size:1.5em;line-height:1.2}
-.figures dd small{display:block;font-size:.62em;color:var(--soft)}
+.figures dd{font-size:1.45em;line-height:1.2;white-space:nowrap}
+.figures dd small{display:block;font-size:.6em;color:var(--soft)}
 .pair{display:grid;grid-template-columns:1fr 1fr;gap:8px 26px;margin-top:22px}
 @media (max-width:620px){.pair{grid-template-columns:1fr}}
 @media print{.pair{grid-template-columns:1fr 1fr}}

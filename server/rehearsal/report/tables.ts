@@ -1,7 +1,17 @@
 import type { RehearsalResult } from '../../../shared-types/rehearsal.ts';
 import type { Interval } from '../../../shared-types/score.ts';
-import { falseRateWords, inUnit, rateUnitOf, type TimeUnit } from '../words.ts';
-import { figure, type Html, html, percentWords, shortWords, spanWords, timeWords } from './html.ts';
+import { falseRateWords, rateUnitOf } from '../words.ts';
+import {
+  figure,
+  type Html,
+  html,
+  hundredthWords,
+  percentWords,
+  rateWords,
+  shortWords,
+  spanWords,
+  timeWords,
+} from './html.ts';
 
 const count = (value: number): Html => figure(value, String);
 
@@ -11,12 +21,6 @@ function intervalRow(name: string, { value, low, high }: Interval, words: (value
       ? html`<span class="none">–</span>`
       : html`${figure(low, words)} to ${figure(high, words)}`
   }</td></tr>`;
-}
-
-/** A rate with its interval in a unit, from one per hour. */
-export function rateIn({ value, low, high }: Interval, unit: TimeUnit): Interval {
-  const [a, b, c] = [value, low, high].map((one) => (one === null ? null : inUnit(one, unit)));
-  return { value: a!, low: b!, high: c! };
 }
 
 /** The score of the judged part: fractions and rates with their 95 % intervals, then what was counted. */
@@ -31,9 +35,9 @@ export function scoreTable({ score }: RehearsalResult): Html {
 ${intervalRow('switches warned', score.detection, percentWords)}
 ${intervalRow('warnings that came true', score.cameTrue, percentWords)}
 ${intervalRow('false alarm ratio', score.falseRatio, percentWords)}
-${intervalRow(`false warnings ${unit.words}`, rateIn(score.falsePerHour, unit), shortWords)}
+${intervalRow(`false warnings ${unit.words}`, score.falsePerHour, rateWords(unit))}
 <tr><th>lead: median</th><td class="n">${figure(lead.median, spanWords)}</td><td>10 % to 90 %: ${figure(lead.p10, spanWords)} to ${figure(lead.p90, spanWords)}; of a warner that knows nothing: ${figure(lead.random, spanWords)}</td></tr>
-<tr><th>skill: warned less time in spans</th><td class="n">${figure(score.skill, shortWords)}</td><td>p ${figure(score.pValue, shortWords)}; ${figure(score.tau, percentWords)} of the time lay in a span; share of a perfect warner's skill: ${figure(score.skillShare, percentWords)}</td></tr>
+<tr><th>skill: warned less time in spans</th><td class="n">${figure(score.skill, hundredthWords)}</td><td>p ${figure(score.pValue, shortWords)}; ${figure(score.tau, percentWords)} of the time lay in a span; share of a perfect warner's skill: ${figure(score.skillShare, percentWords)}</td></tr>
 <tr><th>switches</th><td class="n">${count(switches.total)}</td><td>${counted(switches)}</td></tr>
 <tr><th>warnings</th><td class="n">${count(warnings.total)}</td><td>${counted(warnings)}</td></tr>
 <tr><th>watched</th><td class="n">${figure(score.watchedSeconds, spanWords)}</td><td>with a full window</td></tr>
@@ -45,7 +49,7 @@ export function contenderTable({ contenders, settings }: RehearsalResult): Html 
   const chosen = settings.variable === 'forcing' ? 'forcing' : `level ${settings.direction}`;
   const rows = contenders.map(
     ({ name, kind, settings: words, skill, detection, cameTrue }) =>
-      html`<tr class="${name === chosen ? 'chosenRow' : kind}"><th>${name}</th><td>${kind}</td><td class="n">${figure(skill, shortWords)}</td><td class="n">${figure(detection, percentWords)}</td><td class="n">${figure(cameTrue, percentWords)}</td><td>${words}</td></tr>`,
+      html`<tr class="${name === chosen ? 'chosenRow' : kind}"><th>${name}</th><td>${kind}</td><td class="n">${figure(skill, hundredthWords)}</td><td class="n">${figure(detection, percentWords)}</td><td class="n">${figure(cameTrue, percentWords)}</td><td>${words}</td></tr>`,
   );
   return html`<table><thead><tr><th>warns by</th><th></th><th class="n">skill</th><th class="n">warned</th><th class="n">came true</th><th>set to</th></tr></thead><tbody>${rows}</tbody></table>`;
 }
@@ -102,13 +106,14 @@ const MOST_STRETCHES = 12;
 export function provenanceTable(result: RehearsalResult): Html {
   const { recordings, leftOut, program, at, request, seconds: took, fittedOnJudged } = result;
   const rows = recordings.map(({ name, from, to, judgedFrom, samples, sha256 }, i) => {
+    const words = (time: number) => timeWords(time, from);
     const out = leftOut.filter(({ recording }) => recording === i);
     const listed = out
       .slice(0, MOST_STRETCHES)
-      .map(({ from, to, why }) => `${timeWords(from)} to ${timeWords(to)} (${why})`)
+      .map((one) => `${words(one.from)} to ${words(one.to)} (${one.why})`)
       .join('; ');
     const more = out.length > MOST_STRETCHES ? `; and ${out.length - MOST_STRETCHES} more` : '';
-    return html`<tr><th>${name}</th><td>${timeWords(from)} to ${timeWords(to)}, ${count(samples)} samples, judged from ${timeWords(judgedFrom)}<br/><span class="hash">SHA-256 ${sha256}</span>${out.length > 0 ? html`<br/>left out: ${listed}${more}` : null}</td></tr>`;
+    return html`<tr><th>${name}</th><td>${words(from)} to ${words(to)}, ${count(samples)} samples, judged from ${words(judgedFrom)}<br/><span class="hash">SHA-256 ${sha256}</span>${out.length > 0 ? html`<br/>left out: ${listed}${more}` : null}</td></tr>`;
   });
   return html`<table><tbody>${rows}
 <tr><th>made by</th><td>${program}, ${at}, seed ${count(request.seed)}, in ${figure(took, spanWords)}</td></tr>

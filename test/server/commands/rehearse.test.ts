@@ -159,6 +159,14 @@ describe('foreshift rehearse', () => {
       expect(found.settings).toHaveProperty(key);
   });
 
+  it('names every baseline also where the level itself is what is watched, and does not compare it with itself', async () => {
+    const { out } = await run(recording, ...SEARCH, '--variable', 'level', '--json');
+    const { settings, baselines, verdict } = JSON.parse(out);
+    expect(settings.variable).toBe('level');
+    expect(Object.keys(baselines)).toEqual(expect.arrayContaining(BASELINES));
+    expect(verdict.than).not.toBe(`level ${settings.direction}`);
+  });
+
   it('writes the chosen settings as a model that says the same when it is rehearsed', async () => {
     const out = join(folder, 'chosen.json');
     const searched = await run(recording, ...SEARCH, '--json', '--out', out);
@@ -219,6 +227,26 @@ describe('foreshift rehearse', () => {
     const { code, err } = await run(recording, short, ...SEARCH);
     expect(err).toMatch(/short.csv has no full window/);
     expect(code).toBe(2);
+  });
+
+  it('says when a recording has no value, or one switch alone that cannot be chosen by', async () => {
+    const written = async (name: string, values: Float64Array) => {
+      const file = join(folder, name);
+      const channels = [{ ...series, values, unit: 'K' }];
+      await writeFile(file, writeCsv({ name: '', sha256: '', channels }));
+      return run(file, ...SEARCH);
+    };
+    const once = await written(
+      'once.csv',
+      series.values.map((value, i) => (Math.abs(value) + 1) * (series.times[i]! < 3000 ? 1 : -1)),
+    );
+    const empty = await written(
+      'empty.csv',
+      series.values.map(() => Number.NaN),
+    );
+    expect(once.err).toMatch(/no switch lies in the tuning part \(the only switch comes later\)/);
+    expect(empty.err).toMatch(/empty.csv has no value of Loop B/);
+    expect([once.code, empty.code, once.out, empty.out]).toEqual([2, 2, '', '']);
   });
 
   it('asks for a rule when the model has none and the options give none', async () => {

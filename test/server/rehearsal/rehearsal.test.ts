@@ -283,6 +283,26 @@ describe('what a rehearsal refuses, in a sentence', () => {
     expect(run(quiet(0, 2800))).toThrow(expect.objectContaining({ code: 'NO_SWITCH_TO_TUNE' }));
   });
 
+  it('the only switch before or after the tuning part, in words for one', () => {
+    const late = series.values.map((value, i) => (Math.abs(value) + 1) * (series.times[i]! < 4500 ? 1 : -1));
+    const run = (values: Float64Array) => () => runRehearsal(taskOf([[{ ...series, values }]]));
+    expect(run(late)).toThrow('no switch lies in the tuning part (the only switch comes later)');
+    const early = series.values.map((value, i) => (Math.abs(value) + 1) * (series.times[i]! < 900 ? 1 : -1));
+    expect(run(early)).toThrow(/^the only switch lies in the tuning part/);
+  });
+
+  it('marks that leave nothing, and a channel without a value', () => {
+    const [recording] = task.recordings;
+    const marked = { ...recording!, leftOut: [{ from: -1, to: 9999, why: 'calibration' }] };
+    expect(() => runRehearsal({ ...task, recordings: [marked] })).toThrow(
+      /^marks and conditions leave nothing of Loop A in the recording run 1 \(1 stretch left out\).*withdraw/,
+    );
+    const empty = { ...series, values: series.values.map(() => Number.NaN) };
+    expect(() => runRehearsal(taskOf([[series], [empty]]))).toThrow(
+      /^the recording run 2 has no value of Loop A in \d+ samples/,
+    );
+  });
+
   it('a recording with no full window', () => {
     const short = { ...series, times: series.times.slice(0, 2), values: series.values.slice(0, 2) };
     expect(() => runRehearsal(taskOf([[series], [short]]))).toThrow(/run 2 has no full window/);

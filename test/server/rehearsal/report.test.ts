@@ -59,10 +59,11 @@ describe('the report of a rehearsal', () => {
     expect(report.match(/<svg/g)!.length).toBeGreaterThanOrEqual(3);
   });
 
-  it('says the verdict first, then the sentence, and ends with the caution', () => {
-    const at = (text: string) => report.indexOf(text);
-    expect(at(`<h1>${result.verdict.sentence}</h1>`)).toBeGreaterThan(0);
-    expect(at(result.sentence)).toBeGreaterThan(at(result.verdict.sentence));
+  it('says the answer first, then the verdict in full, and ends with the caution', () => {
+    const at = (text: string) => plain.indexOf(text);
+    const plain = report.replaceAll('\u00a0', ' ').replaceAll('−', '-');
+    expect(at(`<h1>${result.sentence}</h1>`)).toBeGreaterThan(0);
+    expect(at(result.verdict.sentence)).toBeGreaterThan(at(result.sentence));
     expect(at('not a safety function')).toBeGreaterThan(at('foreshift 9.8.7'));
   });
 
@@ -94,6 +95,27 @@ describe('the report of a rehearsal', () => {
     for (const text of ['ab'.repeat(32), 'foreshift 9.8.7', '2026-12-01', 'run.csv', 'calibration'])
       expect(report, text).toContain(text);
     expect(report).toMatch(/left out: 100\u00a0s to 160\u00a0s/);
+  });
+
+  it('reads spans and rates in years where years were recorded, and keeps the figures', () => {
+    const years = 20 * 31_557_600;
+    const { settings, score } = result;
+    const slow = reportHtml({
+      ...result,
+      settings: { ...settings, leastLead: years / 40, horizon: years / 8, holdOff: years / 10 },
+      score: {
+        ...score,
+        watchedSeconds: years,
+        falsePerHour: { value: 1 / 8766, low: 0, high: 2 / 8766 },
+        lead: { ...score.lead, median: years / 16 },
+      },
+    });
+    expect(slow).toContain('lead (years)');
+    expect(slow).toContain('least lead 183\u00a0days');
+    expect(slow).toContain('false a year');
+    expect(slow).toContain(`<data value="${1 / 8766}">1</data>`);
+    expect(slow).toContain(`<data value="${years / 16}">457\u00a0days</data>`);
+    expect(slow).not.toMatch(/[^"\d.]\d{7,}\u00a0s/);
   });
 
   it('draws one bar for every lead: their heights add up to the warned switches', () => {

@@ -105,7 +105,7 @@ describe('the verdict', () => {
     for (const level of [null, { name: 'level falling', skill: 0.2 }]) {
       const { kind, than, sentence } = of({ rival, level });
       expect([kind, than]).toEqual(['no better than', 'distance from the mean falling']);
-      expect(sentence).toMatch(/read it off the channel itself, or watch the forcing/);
+      expect(sentence).toMatch(/go by that itself, or watch the forcing/);
       expect(sentence).not.toContain('--variable');
     }
   });
@@ -117,7 +117,9 @@ describe('the verdict', () => {
       /that of the level rising, chosen here, 0\.65; .*can be watched as it is\.$/,
     );
     const better = { name: 'running variance rising', skill: 0.8, value: -0.15, low: -0.2, high: -0.1 };
-    expect(of({ variable, rival: better }).sentence).toMatch(/a limit on running variance, .* better\.$/);
+    expect(of({ variable, rival: better }).sentence).toMatch(
+      /can be watched as it is, but going by running variance warns better\.$/,
+    );
   });
 
   it('names a baseline with more skill that the ceiling leaves out', () => {
