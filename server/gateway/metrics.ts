@@ -181,7 +181,7 @@ function ingestFamilies({ counts, channels, now }: Hub): Family[] {
   ];
 }
 
-function watchFamilies({ watches }: Hub, seen: ReturnType<typeof createSeen>['seen']): Family[] {
+function watchFamilies({ watches, deliveries }: Hub, seen: ReturnType<typeof createSeen>['seen']): Family[] {
   const graded = [...seen.graded].map(([key, count]) => {
     const [watch, outcome] = JSON.parse(key) as [string, string];
     return [{ watch, outcome }, count] as const;
@@ -226,6 +226,12 @@ function watchFamilies({ watches }: Hub, seen: ReturnType<typeof createSeen>['se
       'foreshift_delivery_seconds',
       'From the making of a warning until the first page or receiver had it.',
       'seconds',
+    ),
+    family(
+      'gauge',
+      'foreshift_outbox_waiting',
+      'Messages to a receiver that are not delivered yet.',
+      by('receiver', deliveries.waiting()),
     ),
     family('counter', 'foreshift_switches', 'Switches noted.', by('watch', seen.switches.entries())),
   ];

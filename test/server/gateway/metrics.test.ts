@@ -71,3 +71,14 @@ it('counts the seconds in which a watch is blind', async () => {
   const blind = async () => (await scrape(port)).value('foreshift_watch_blind_seconds_total', { watch });
   await until(async () => ((await blind()) ?? 0) >= 2);
 });
+
+it('tells how much waits for each receiver', async () => {
+  const { hub, port } = await serve(temporaryFolder());
+  hub.deliveries.waiting = () => [
+    ['lamp', 3],
+    ['log "b"', 0],
+  ];
+  const { value } = await scrape(port);
+  expect(value('foreshift_outbox_waiting', { receiver: 'lamp' })).toBe(3);
+  expect(value('foreshift_outbox_waiting', { receiver: 'log "b"' })).toBe(0);
+});
