@@ -129,6 +129,8 @@ export const TrialSeen = z.object({
   painted: z.number().nonnegative().max(60).nullable(),
   /** until its tone began; null: the tone is off */
   tone: z.number().nonnegative().max(60).nullable(),
+  /** until this was sent */
+  held: z.number().nonnegative().max(60),
 });
 export type TrialSeen = z.infer<typeof TrialSeen>;
 

@@ -1,12 +1,13 @@
 import type { ChannelState, Columns } from './channel.ts';
+import type { MeasuredDelay, Trial, TrialSeen } from './delivery.ts';
 import type { LogEntry, SwitchEvent, Warning } from './warning.ts';
 import type { WatchState } from './watch.ts';
 
 /** WebSocket subprotocol of `/feed`: binary CBOR from the server, JSON text from the page. */
 export const FEED_PROTOCOL = 'foreshift.feed.1';
 
-/** What a page says: how much of the past it draws and how many columns of pixels it has for it. */
-export type FeedRequest = { look: { seconds: number; columns: number } };
+/** What a page says: how much of the past it draws and how many columns of pixels it has for it; that it has shown a trial. */
+export type FeedRequest = { look: { seconds: number; columns: number } } | TrialSeen;
 
 /** What the server says to a page. The first message is a `welcome`; everything later changes it. */
 export type FeedMessage =
@@ -17,6 +18,10 @@ export type FeedMessage =
   | { kind: 'warning'; warning: Warning }
   | { kind: 'switch'; switch: SwitchEvent }
   | { kind: 'log'; entry: LogEntry }
+  /** to be shown as a trial, and echoed once it is */
+  | { kind: 'trial'; trial: Trial }
+  /** what a trial found out */
+  | { kind: 'delay'; delay: MeasuredDelay }
   /** new drawing data; `replace`: what the page has for this series is to be dropped first */
   | { kind: 'signal'; channel: string; columns: Columns; replace: boolean; newest: number; age: number }
   | { kind: 'trace'; watch: string; columns: Columns; replace: boolean }
@@ -40,4 +45,6 @@ export interface Welcome {
   warnings: Warning[];
   /** those within the last hour of each channel's time, oldest first, at most 2000 */
   switches: SwitchEvent[];
+  /** the newest measured delay of each watch that has one; absent from older servers */
+  delays?: MeasuredDelay[];
 }

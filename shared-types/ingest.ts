@@ -25,6 +25,10 @@ export const FrameEnvelope = z.object({
   t0: z.union([z.number(), z.string()]).optional(),
   /** seconds between samples */
   dt: z.number().positive().finite().optional(),
+  /** the answer to a trial: its id, as the server sent it. A mark that cannot be read harms no frame. */
+  trial: z.string().min(1).max(100).optional().catch(undefined),
+  /** with a trial: when the frame was sent, by the clock that stamps the samples */
+  sentAt: z.union([z.number(), z.string()]).optional().catch(undefined),
 });
 export type FrameEnvelope = z.infer<typeof FrameEnvelope>;
 
@@ -33,6 +37,8 @@ export type IngestReply =
   | { resume: number; channel: string }
   | { window: number }
   | { ack: number; channel: string }
+  /** asks for the channel's next frame to be marked; a producer that does not know of trials passes it over */
+  | { trial: string; channel: string }
   | { error: string; code: IngestErrorCode; channel?: string; seq?: number };
 
 /** Stable codes of the errors a producer may be told of. */

@@ -28,6 +28,8 @@ export interface ProducerOptions {
   run: string;
   channels: z.input<typeof ChannelDescription>[];
   onState?: (state: ProducerState) => void;
+  /** the clock that stamps the samples, seconds; default: the machine's */
+  clock?: () => number;
   /** shown to a server that asks for one; default: FORESHIFT_TOKEN of the environment */
   token?: string | null;
   /** frames kept while the server cannot be reached; beyond it the oldest is given up. Default 20 000 */
@@ -95,7 +97,10 @@ export function createProducer(options: ProducerOptions): Producer {
   const limit = options.limit ?? 20_000;
   const token = options.token === undefined ? (process.env.FORESHIFT_TOKEN ?? null) : options.token;
   const say = options.onState ?? (() => {});
+  const clock = options.clock ?? (() => Date.now() / 1000);
   const nextSeq = new Map<string, number>();
+  /** by channel, the trial its next frame answers */
+  const trials = new Map<string, string>();
   const kept = new Map<string, Kept[]>();
   for (const { channel } of options.channels) {
     nextSeq.set(channel, 0);
@@ -181,7 +186,8 @@ export function createProducer(options: ProducerOptions): Producer {
     else if ('ack' in reply) {
       retryIn = FIRST_RETRY_SECONDS;
       acknowledge(reply.channel, reply.ack);
-    } else if ('window' in reply) {
+    } else if ('trial' in reply) trials.set(reply.channel, reply.trial);
+    else if ('window' in reply) {
       window = reply.window;
       say({ kind: 'connected' });
     } else {
@@ -255,7 +261,10 @@ export function createProducer(options: ProducerOptions): Producer {
       if (seq === undefined)
         throw new RangeError(`channel "${channel}" was not named; name it in \`channels\` of createProducer`);
       nextSeq.set(channel, seq + 1);
-      const bytes = encoder.encode({ channel, seq, ...frame });
+      const trial = trials.get(channel);
+      trials.delete(channel);
+      const mark = trial === undefined ? {} : { trial, sentAt: clock() };
+      const bytes = encoder.encode({ channel, seq, ...frame, ...mark });
       const entry: Kept = { channel, seq, bytes, sent: false, settled: false };
       queue.push(entry);
       kept.get(channel)!.push(entry);

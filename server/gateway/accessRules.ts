@@ -24,6 +24,8 @@ export const RULES: Readonly<Record<string, Rule>> = {
   'POST /api/watches/:watch/actions': 'operator',
   'POST /api/watches/:watch/use': 'operator',
   'GET /api/watches/:watch/columns': 'viewer',
+  'GET /api/watches/:watch/delay': 'viewer',
+  'POST /api/watches/:watch/trials': 'operator',
   'GET /api/models': 'viewer',
   'POST /api/models': 'operator',
   'GET /api/models/:name': 'viewer',

@@ -1,6 +1,7 @@
 import { Encoder } from 'cbor-x';
 import { interval, type Subscription } from 'rxjs';
 import { z } from 'zod';
+import { TrialSeen } from '../../shared-types/delivery.ts';
 import type { FeedMessage, Welcome } from '../../shared-types/feed.ts';
 import type { Warning } from '../../shared-types/warning.ts';
 import { changedKeys } from './changedKeys.ts';
@@ -73,6 +74,7 @@ async function welcomeOf(hub: Hub, facts: FeedFacts): Promise<Welcome> {
     ),
   );
   const warnings = await hub.store.warnings({ newest: true, most: WELCOME_WARNINGS });
+  const delays = await Promise.all(watches.map(({ watch }) => hub.store.delay(watch)));
   const moment = hub.now();
   return {
     ...facts,
@@ -81,6 +83,7 @@ async function welcomeOf(hub: Hub, facts: FeedFacts): Promise<Welcome> {
     channels: hub.channels.states(moment),
     watches: hub.watches.states(),
     warnings,
+    delays: delays.filter((delay) => delay !== null),
     switches: switches
       .flat()
       .sort((a, b) => a.at - b.at)
@@ -110,6 +113,7 @@ export function createFeedSession(hub: Hub, link: FeedLink, facts: FeedFacts): F
     if (message.kind === 'warning') link.send(bytes, () => deliver([message.warning]));
     else if (message.kind === 'welcome') link.send(bytes, () => deliver(message.welcome.warnings));
     else link.send(bytes);
+    if (message.kind === 'trial') hub.trials.told(message.trial.id);
     if (link.waiting() > HANG_UP_BYTES)
       link.close(TRY_AGAIN_LATER, 'this page reads too slowly; connect again');
   };
@@ -238,6 +242,11 @@ export function createFeedSession(hub: Hub, link: FeedLink, facts: FeedFacts): F
         parsed = JSON.parse(text);
       } catch {
         parsed = null;
+      }
+      const seen = TrialSeen.safeParse(parsed);
+      if (seen.success) {
+        hub.trials.seen(seen.data);
+        return;
       }
       const asked = Look.safeParse(parsed);
       if (!asked.success) {

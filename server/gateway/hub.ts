@@ -9,6 +9,7 @@ import { type Channels, createChannels, type Moment } from './channels.ts';
 import { type Counts, createCounts } from './counts.ts';
 import { createDeliveries, type Deliveries } from './delivery/delivery.ts';
 import type { OpenReceiver } from './delivery/receivers.ts';
+import { createTrials, type TrialProducer, type Trials } from './delivery/trials.ts';
 import { createIngestSession, type IngestDoors, type IngestSession, type Refusal } from './ingestSession.ts';
 import { createJournal, type Journal } from './journal.ts';
 import { createKeeping } from './keeping.ts';
@@ -33,15 +34,17 @@ export interface Hub {
   leftOut: LeftOutRegistry;
   journal: Journal;
   deliveries: Deliveries;
+  trials: Trials;
   recorder: Recorder;
   store: Store;
   settings: Settings;
   now(): Moment;
-  /** a producer's connection; `close` ends its socket, `feeds` says which channels its token is for */
+  /** a producer's connection; `close` ends its socket, `feeds` says which channels its token is for, `roundTrip` pings it */
   producer(
     reply: IngestDoors['reply'],
     close: IngestDoors['close'],
     feeds?: (channel: string) => boolean,
+    roundTrip?: TrialProducer['roundTrip'],
   ): IngestSession;
   counts: Counts;
   frames$: Subject<FrameToStore>;
@@ -76,6 +79,7 @@ interface Holder {
   run: string | null;
   session: IngestSession;
   close: IngestDoors['close'];
+  trial: TrialProducer;
   feeds(channel: string): boolean;
 }
 
@@ -167,6 +171,19 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
   // a server killed again within a second must not catch up from the same place each time
   attempt(watches.saveProgress());
   await deliveries.start();
+  const trials = createTrials({
+    store,
+    journal,
+    deliveries,
+    now,
+    watch: (watch) => watches.state(watch),
+    producer(channel) {
+      const holder = holders.get(channel);
+      return holder === undefined || channels.silent(channel, now()) ? null : holder.trial;
+    },
+    interval: channels.interval,
+    say,
+  });
   const keeping = createKeeping({
     store,
     settings,
@@ -176,7 +193,7 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
     warn: needs.warn,
   });
 
-  const take: IngestDoors['take'] = (frame, _arrival, settled) => {
+  const take: IngestDoors['take'] = (frame, arrival, settled, mark) => {
     const gaps = channels.take(frame, now());
     counts.frames.add(frame.channel, 1);
     counts.samples.add(frame.channel, frame.values.length);
@@ -187,6 +204,7 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
       settled(problem);
     });
     watches.push(frame);
+    trials.took(frame, arrival, mark);
     touched$.next(`channel ${frame.channel}`);
     // a frame that could not be stored comes again: it is drawn already
     if (frame.t0 <= (drawn.get(frame.channel) ?? Number.NEGATIVE_INFINITY)) return;
@@ -296,8 +314,9 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
     journal.log({ kind: 'hole', channel, watch: null, by: null, text: `the producer skipped ${frames}` });
   };
 
-  const producer: Hub['producer'] = (reply, close, feeds = () => true) => {
-    const holder = { run: null, close, feeds } as unknown as Holder;
+  const producer: Hub['producer'] = (reply, close, feeds = () => true, roundTrip = async () => null) => {
+    const trial: TrialProducer = { ask: (id, channel) => reply({ trial: id, channel }), roundTrip };
+    const holder = { run: null, close, feeds, trial } as unknown as Holder;
     const session = createIngestSession(
       {
         greet(hello) {
@@ -342,6 +361,7 @@ export async function createHub(needs: HubNeeds): Promise<Hub> {
     leftOut,
     journal,
     deliveries,
+    trials,
     recorder,
     store,
     settings,

@@ -17,6 +17,15 @@ export interface DecodedFrame {
   /** a copy of its own; NaN where there was no value */
   values: Float64Array;
   digest: number;
+  /** it answers a trial */
+  mark: TrialMark | null;
+}
+
+/** What a frame that answers a trial says besides its samples. */
+export interface TrialMark {
+  trial: string;
+  /** when it was sent, by the clock that stamps the samples, seconds; null: not said */
+  sentAt: number | null;
 }
 
 /** What one message was. A bad one is a value; channel and seq are named where they could be read. */
@@ -111,6 +120,15 @@ function valuesOf(source: unknown, largest: number): Float64Array {
   return values;
 }
 
+function markOf({ trial, sentAt }: FrameEnvelope): TrialMark | null {
+  if (trial === undefined) return null;
+  try {
+    return { trial, sentAt: sentAt === undefined ? null : secondsOf(sentAt, 'sentAt') };
+  } catch {
+    return { trial, sentAt: null };
+  }
+}
+
 function frameOf(message: Record<string, unknown>, largest: number): DecodedFrame {
   const envelope = FrameEnvelope.safeParse(message);
   if (!envelope.success) throw new Unusable('NOT_A_FRAME', complaint(envelope.error));
@@ -129,7 +147,8 @@ function frameOf(message: Record<string, unknown>, largest: number): DecodedFram
     throw new Unusable('BAD_TIMES', `the frame ends after ${LATEST_TIME} s; send t0 and dt in seconds`);
   if (t0 !== null && dt !== null && values.length > 1 && t0 + dt <= t0)
     throw new Unusable('BAD_TIMES', `dt = ${dt} s vanishes beside t0 = ${t0} s in float64; send a longer dt`);
-  return { channel, seq, t0, dt, times, values, digest: frameDigest(t0 ?? 0, dt ?? 0, times, values) };
+  const digest = frameDigest(t0 ?? 0, dt ?? 0, times, values);
+  return { channel, seq, t0, dt, times, values, digest, mark: markOf(envelope.data) };
 }
 
 function helloOf(message: Record<string, unknown>): Hello {

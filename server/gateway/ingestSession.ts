@@ -1,7 +1,7 @@
 import type { Hello, IngestErrorCode, IngestReply } from '../../shared-types/ingest.ts';
 import type { FrameToStore, StoredRun } from '../store/store.ts';
 import { stampOnArrival } from './arrivalStamps.ts';
-import { type Decoded, type DecodedFrame, decodeMessage } from './ingestFrame.ts';
+import { type Decoded, type DecodedFrame, decodeMessage, type TrialMark } from './ingestFrame.ts';
 
 /** What may be wrong with a hello or a claim on a channel. */
 export interface Refusal {
@@ -21,7 +21,7 @@ export interface IngestDoors {
   claim(channel: string, interval: number | null): Refusal | null;
   /** time of the newest sample taken on a channel */
   newest(channel: string): number | null;
-  take(frame: FrameToStore, arrival: number, settled: Settled): void;
+  take(frame: FrameToStore, arrival: number, settled: Settled, mark: TrialMark | null): void;
   /** gives a frame number up */
   skip(channel: string, run: string, seq: number, digest: number, settled: Settled): void;
   /** frames `from` to `to` of a run never came */
@@ -203,7 +203,7 @@ export function createIngestSession(doors: IngestDoors, limits: IngestLimits): I
         ? ({ code: 'BAD_TIMES', detail: 'the frame has no times; send t0 and dt, or t' } as const)
         : ({ code: 'TIME_BACKWARDS', detail: backwards(channel, t0) } as const);
     if (t0 !== null && problem.detail === null)
-      return doors.take(toStore(frame, name, seq, t0), arrivalNow, settled);
+      return doors.take(toStore(frame, name, seq, t0), arrivalNow, settled, frame.mark);
     refuse(problem.code, problem.detail!, channel, seq);
     doors.skip(channel, name, seq, digest, settled);
   };
@@ -246,9 +246,10 @@ export function createIngestSession(doors: IngestDoors, limits: IngestLimits): I
     if (!stamp.ok) return refuse('BAD_TIMES', stamp.detail, channel, null);
     const detail = backwards(channel, stamp.t0);
     if (detail !== null) return refuse('TIME_BACKWARDS', detail, channel, null);
-    doors.take(toStore(frame, '', -1, stamp.t0), arrival, (problem) => {
+    const settled: Settled = (problem) => {
       if (problem !== null && mode !== 'ended') refuse('NOT_STORED', problem, channel, null);
-    });
+    };
+    doors.take(toStore(frame, '', -1, stamp.t0), arrival, settled, frame.mark);
   };
 
   const greeted = (answer: Awaited<ReturnType<IngestDoors['greet']>>) => {

@@ -87,6 +87,29 @@ function reading(
   };
 }
 
+/** How long a ping is waited for, milliseconds. */
+const ROUND_TRIP_MILLISECONDS = 2000;
+let pings = 0;
+
+/** Seconds until the other side has answered a ping (RFC 6455, 5.5.2), which every WebSocket does; null: it did not. */
+function roundTrip(socket: WebSocket): Promise<number | null> {
+  const payload = `trial ${++pings}`;
+  const began = performance.now();
+  return new Promise((resolve) => {
+    const settle = (seconds: number | null) => {
+      clearTimeout(limit);
+      socket.off('pong', hear);
+      resolve(seconds);
+    };
+    const hear = (data: Buffer) => {
+      if (data.toString() === payload) settle((performance.now() - began) / 1000);
+    };
+    const limit = setTimeout(settle, ROUND_TRIP_MILLISECONDS, null);
+    socket.on('pong', hear);
+    socket.ping(payload, undefined, (error) => error && settle(null));
+  });
+}
+
 /**
  * Producers.
  *
@@ -105,6 +128,7 @@ export function serveProducers(hub: Hub, sockets: WebSocketServer, told: Told): 
       },
       (code, reason) => socket.close(code, fittingReason(reason)),
       (channel) => mayFeed(identity, channel),
+      () => roundTrip(socket),
     );
     socket.on('message', (data: Buffer, binary) => {
       if (!taking) return;

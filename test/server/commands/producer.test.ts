@@ -107,3 +107,41 @@ it('shows its token, and ends with the server’s own sentence when it is not le
     await refused.close();
   }
 });
+
+it('answers a trial with the next frame of its channel, once', async () => {
+  server = new WebSocketServer({ port: 0, host: '127.0.0.1' });
+  await once(server, 'listening');
+  const frames: Record<string, unknown>[] = [];
+  server.on('connection', (socket) =>
+    socket.on('message', (data: Buffer, binary) => {
+      if (binary) {
+        const frame = decoder.decode(data) as Record<string, unknown>;
+        frames.push(frame);
+        socket.send(JSON.stringify({ ack: frame.seq, channel: frame.channel }));
+      } else
+        for (const reply of [{ window: WINDOW }, { trial: 'x', channel: 'c' }])
+          socket.send(JSON.stringify(reply));
+    }),
+  );
+  const states: ProducerState[] = [];
+  producer = createProducer({
+    to: `ws://127.0.0.1:${(server.address() as AddressInfo).port}/ingest`,
+    run: 'r',
+    channels: [{ channel: 'c' }, { channel: 'd' }],
+    clock: () => 12.5,
+    onState: (state) => states.push(state),
+  });
+  await until(() => states.some(({ kind }) => kind === 'connected'));
+  await new Promise((resolve) => setTimeout(resolve, 50));
+  const values = Float64Array.of(1);
+  producer.send('d', { t0: 12, dt: 1, values });
+  producer.send('c', { t0: 12, dt: 1, values });
+  producer.send('c', { t0: 13, dt: 1, values });
+  await producer.idle();
+  expect(frames.map(({ channel, seq, trial, sentAt }) => [channel, seq, trial, sentAt])).toEqual([
+    ['d', 0, undefined, undefined],
+    ['c', 0, 'x', 12.5],
+    ['c', 1, undefined, undefined],
+  ]);
+  expect(states.map(({ kind }) => kind)).not.toContain('refused');
+});

@@ -32,6 +32,19 @@ describe('a frame', () => {
     expect([...read.values]).toEqual([1, Number.NaN, -2.5]);
   });
 
+  it('may answer a trial: what it is does not change by that, and a mark that cannot be read harms nothing', () => {
+    const fields = { channel: 'c', seq: 0, t0: 1, dt: 1, values: [1, 2] };
+    const plain = frame(JSON.stringify(fields));
+    expect(plain.mark).toBeNull();
+    const marked = (mark: object) => frame(JSON.stringify({ ...fields, ...mark }));
+    const answer = marked({ trial: 'x', sentAt: '1970-01-01T00:00:02.5Z' });
+    expect(answer).toEqual({ ...plain, mark: { trial: 'x', sentAt: 2.5 } });
+    expect(marked({ trial: 'x' }).mark).toEqual({ trial: 'x', sentAt: null });
+    expect(marked({ trial: 'x', sentAt: 'soon' }).mark).toEqual({ trial: 'x', sentAt: null });
+    expect(marked({ trial: 'x', sentAt: [] }).mark).toEqual({ trial: 'x', sentAt: null });
+    for (const trial of [7, '', 'x'.repeat(101), null]) expect(marked({ trial })).toEqual(plain);
+  });
+
   it('is the same from JSON, CBOR arrays and CBOR typed arrays, its digest too', () => {
     const text = frame('{"channel":"c","seq":0,"t0":1,"dt":1,"values":[1,null,3]}');
     const fields = { channel: 'c', seq: 0, t0: 1, dt: 1 };
