@@ -146,6 +146,7 @@ export interface Store extends StoreReader {
 
   saveModel(name: string, json: string): Promise<void>;
 
+  /** a new watch or changed settings; without a snapshot the one that is stored stays */
   saveWatch(watch: StoredWatch): Promise<void>;
   watches(): Promise<StoredWatch[]>;
   saveProgress(progress: WatchProgress[]): Promise<void>;

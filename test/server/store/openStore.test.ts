@@ -226,6 +226,11 @@ test('models, watches with their snapshots, and the log come back as they were',
   const trace = { times: Float64Array.of(1, 2, 3), values: Float64Array.of(5, Number.NaN, 7) };
   await store.saveProgress([{ watch: 'w', snapshot: Uint8Array.of(1, 2, 3), trace }]);
   expect(await store.watches()).toEqual([{ watch: 'w', settings: '{}', snapshot: Uint8Array.of(1, 2, 3) }]);
+  // settings that change before a watch has made a snapshot of its own must not cost it the stored one
+  await store.saveWatch({ watch: 'w', settings: '{"a":1}', snapshot: null });
+  expect(await store.watches()).toEqual([
+    { watch: 'w', settings: '{"a":1}', snapshot: Uint8Array.of(1, 2, 3) },
+  ]);
   const drawn = await store.traceColumns('w', 0, 4, 100);
   expect([...drawn.high]).toEqual([5, Number.NaN, 7]);
   await expect(
