@@ -16,23 +16,28 @@ export interface Verdictable {
   medianLead: number | null;
 }
 
-/** Judges a signal with the rule that it was tuned to; the curve has as many points as there are thresholds. */
+/** Judges a signal with the rule that it was tuned to; the curve has a point a threshold, its own among them. */
 export function judgeTuned(ground: Ground, tuned: Tuned, points = 48): Verdictable {
   const { signal, manner } = tuned;
   const tried = triedOn(ground, signal);
-  const curve = sweep(ground, tried, signal, manner, thresholdsOf(signal, tried, points)).map(toCurve);
   const { rule } = tuned.point;
   const { interval } = ground.spans;
   const point = tryWarner(tried, warnerOf(steppedRule(rule, interval)), rule, interval);
   // the scratch space of each stretch now holds this rule's warnings and what they cover
+  const blocks = joinBlocks(
+    tried.map(({ steps, warnings, size, cover }) => blocksOf(steps, warnings, size, cover)),
+  );
   const leads = tried.flatMap((one) => leadsOf(one, interval)).sort((a, b) => a - b);
+  // last, for it takes the scratch space; with the point itself, which need not be one of the thresholds
+  const thresholds = new Set([...thresholdsOf(signal, tried, points), rule.threshold]);
+  const sign = signal.direction === 'falling' ? -1 : 1;
+  const ascending = [...thresholds].sort((a, b) => sign * (a - b));
+  const curve = sweep(ground, tried, signal, manner, ascending).map(toCurve);
   return {
     tuned,
     point,
     curve,
-    blocks: joinBlocks(
-      tried.map(({ steps, warnings, size, cover }) => blocksOf(steps, warnings, size, cover)),
-    ),
+    blocks,
     medianLead: leads.length === 0 ? null : leads[leads.length >> 1]!,
   };
 }

@@ -1,7 +1,17 @@
 import type { Ceiling, Verdict } from '../../shared-types/rehearsal.ts';
 import type { Score } from '../../shared-types/score.ts';
 import { LEAST_PERFECT_SKILL } from './perfect.ts';
-import { counted, falseRateWords, inUnit, percent, pluralOf, rateUnitOf, short, spanWords } from './words.ts';
+import {
+  counted,
+  falseRateWords,
+  inUnit,
+  percent,
+  pluralOf,
+  rateUnitOf,
+  short,
+  spanWords,
+  thousandths,
+} from './words.ts';
 
 /** Fewer judged switches than this say too little. */
 export const FEWEST_EVENTS = 10;
@@ -39,7 +49,7 @@ export function verdictOf(task: VerdictTask): Verdict {
   const { perfect, word } = task;
   const crowded =
     perfect !== null && perfect < LEAST_PERFECT_SKILL
-      ? ` The horizon is too long for such frequent ${pluralOf(word)}: even a perfect warner would have a skill of ${short(perfect)}.`
+      ? ` The horizon is too long for such frequent ${pluralOf(word)}: even a perfect warner would have a skill of ${thousandths(perfect)}.`
       : '';
   return { kind, than, sentence: `${sentence}${crowded}` };
 }
@@ -56,10 +66,10 @@ function firstThatApplies(task: VerdictTask): Verdict {
   if (total < FEWEST_EVENTS) return verdict('too few events', tooFewWords(task, total));
   const { skill, pValue } = score;
   if (pValue === null || pValue >= LARGEST_P) {
-    const chance = pValue === null ? '' : ` (p ${short(pValue)})`;
+    const chance = pValue === null ? '' : ` (p ${thousandths(pValue)})`;
     return verdict(
       'no skill',
-      `No skill: warnings as many, moved to another time, do as well often enough${chance}; skill ${short(skill ?? 0)} on ${counted(total, word)}.`,
+      `No skill: warnings as many, moved to another time, do as well often enough${chance}; skill ${thousandths(skill ?? 0)} on ${counted(total, word)}.`,
     );
   }
   if (rival !== null && rival.low <= 0) {
@@ -70,7 +80,8 @@ function firstThatApplies(task: VerdictTask): Verdict {
     );
   }
   const fault = faultOf(task);
-  if (fault !== null) return verdict('weak', `Weak: ${fault}; skill ${short(skill!)}, p ${short(pValue)}.`);
+  if (fault !== null)
+    return verdict('weak', `Weak: ${fault}; skill ${thousandths(skill!)}, p ${thousandths(pValue)}.`);
   return verdict('useful', usefulWords(task));
 }
 
@@ -80,7 +91,7 @@ const isLevel = (name: string): boolean => name.startsWith('level ');
 
 function noBetterWords({ score, variable, word }: VerdictTask, rival: Rival, total: number): string {
   const ours = isLevel(variable) ? `the ${variable}, chosen here,` : `the ${variable}`;
-  return `No better than ${rival.name}: its skill is ${short(rival.skill)}, that of ${ours} ${short(score.skill!)}; difference ${short(rival.value)}, 95 % interval ${short(rival.low)} to ${short(rival.high)} on ${counted(total, word)}.`;
+  return `No better than ${rival.name}: its skill is ${thousandths(rival.skill)}, that of ${ours} ${thousandths(score.skill!)}; difference ${thousandths(rival.value)}, 95 % interval ${thousandths(rival.low)} to ${thousandths(rival.high)} on ${counted(total, word)}.`;
 }
 
 /** What to do when a baseline is as good: of baselines a watch can have the level only. */
@@ -95,7 +106,7 @@ function adviceWords({ variable, score, level }: VerdictTask, rival: Rival): str
   }
   const limit = `A watch cannot be set on ${plainName(rival.name)}`;
   if (level !== null && level.skill >= score.skill!) {
-    return `${limit}, but on the ${level.name}, whose skill is ${short(level.skill)}: rehearse again with a plain level as what to watch (--variable level).`;
+    return `${limit}, but on the ${level.name}, whose skill is ${thousandths(level.skill)}: rehearse again with a plain level as what to watch (--variable level).`;
   }
   return `${limit}: go by that itself, or watch the ${variable} for the skill it has.`;
 }
@@ -131,14 +142,14 @@ function usefulWords({ score, variable, rival, outside, levelChosenFreely }: Ver
   const beaten =
     rival === null
       ? 'no baseline could be judged beside it'
-      : `${short(rival.value)} more than ${rival.name}, 95 % interval ${short(rival.low)} to ${short(rival.high)}`;
+      : `${thousandths(rival.value)} more than ${rival.name}, 95 % interval ${thousandths(rival.low)} to ${thousandths(rival.high)}`;
   const beyond =
     outside === null
       ? ''
-      : ` (${outside.name} has more, ${short(outside.skill)}, but does not keep within what was asked for.)`;
+      : ` (${outside.name} has more, ${thousandths(outside.skill)}, but does not keep within what was asked for.)`;
   const plain =
     levelChosenFreely && isLevel(variable)
       ? ' A plain level is the answer: nothing made of the delay window does better.'
       : '';
-  return `Useful: skill ${short(skill!)}${share}, ${beaten}; ${percent(cameTrue.value)} of the warnings came true, p ${short(pValue!)}.${beyond}${plain}`;
+  return `Useful: skill ${thousandths(skill!)}${share}, ${beaten}; ${percent(cameTrue.value)} of the warnings came true, p ${thousandths(pValue!)}.${beyond}${plain}`;
 }

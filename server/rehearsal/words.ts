@@ -28,6 +28,9 @@ export const short = (value: number): string =>
     ? String(Math.round(value))
     : String(Number(value.toPrecision(3)));
 
+/** A skill, a difference of skills or a p-value to a thousandth: "0.53", "-0.017". */
+export const thousandths = (value: number): string => String(Number(value.toFixed(3)));
+
 /** "12 %" of a share, a tenth more where it is close to nothing or to all; "–" of null. */
 export function percent(share: number | null): string {
   if (share === null) return '–';

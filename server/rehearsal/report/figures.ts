@@ -38,7 +38,7 @@ export function tradeOff(result: RehearsalResult): Html {
       ? null
       : html`<circle class="chosen" cx="${x.at(score.falsePerHour.value).toFixed(1)}" cy="${y.at(score.detection.value).toFixed(1)}" r="5"/>`;
   return drawing(
-    `Trade-off on the judged part: false warnings ${unit.words} against the share of switches warned`,
+    'Trade-off: switches warned against false warnings',
     html`${axisLeft(y, AREA, 'share warned', percentWords)}${axisBelow(axis, AREA, `false warnings ${unit.words}`)}${limit}<clipPath id="plot"><rect x="${AREA.left}" y="${AREA.top}" width="${AREA.right - AREA.left}" height="${AREA.bottom - AREA.top}"/></clipPath><g clip-path="url(#plot)">${drawn}</g>${chosen}`,
     html`${legend(lines)}<p class="note">Each line: the most that any threshold warned of with no more false warnings; the ring is what was chosen.</p>`,
   );

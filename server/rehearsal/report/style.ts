@@ -6,7 +6,6 @@ export const REPORT_STYLE = `
 *{box-sizing:border-box}
 html{background:var(--paper);color:var(--ink);font:14px/1.45 "Helvetica Neue",Helvetica,Arial,"Liberation Sans","Noto Sans",system-ui,sans-serif;font-variant-numeric:tabular-nums;-webkit-print-color-adjust:exact;print-color-adjust:exact}
 body{margin:0 auto;max-width:820px;padding:36px 28px 60px}
-@media print{html{font-size:9pt}h1{font-size:1.3em}body{max-width:none;padding:0}section{break-inside:avoid}.verdict{margin-top:12px}h2{margin-top:16px}}
 h1,h2,p,ul,dl,dd,figure{margin:0;padding:0}
 header{display:flex;justify-content:space-between;gap:24px;color:var(--soft);border-bottom:1px solid var(--edge);padding-bottom:6px}
 h1{font-size:1.4em;line-height:1.3;font-weight:600;margin:12px 0 10px;text-wrap:pretty}
@@ -40,8 +39,10 @@ th{font-weight:400;color:var(--soft)}
 tbody th{color:var(--ink)}
 td.n,th.n{text-align:right;white-space:nowrap}
 tr{break-inside:avoid}
+.score th{white-space:nowrap}
 tr.chosenRow th,tr.chosenRow td{font-weight:600}
 .none{color:var(--soft)}
 .hash{font-family:"DejaVu Sans Mono",Consolas,Menlo,monospace;font-size:.78em;overflow-wrap:anywhere}
 .caution{margin-top:28px;border-left:3px solid var(--red);padding:2px 0 2px 12px;break-inside:avoid}
+@media print{html{font-size:9pt}h1{font-size:1.3em}body{max-width:none;padding:0}section{break-inside:avoid}.verdict{margin-top:12px}h2{margin-top:14px}th,td{padding-top:2px;padding-bottom:2px}.pair{margin-top:14px}}
 `;

@@ -31,13 +31,13 @@ export function scoreTable({ score }: RehearsalResult): Html {
     Object.entries(counts)
       .filter(([name, value]) => name !== 'total' && value > 0)
       .map(([name, value], i) => html`${i === 0 ? '' : ', '}${count(value)} ${name}`);
-  return html`<table><thead><tr><th></th><th class="n">judged</th><th>95 % interval</th></tr></thead><tbody>
+  return html`<table class="score"><thead><tr><th></th><th class="n">judged</th><th>95 % interval</th></tr></thead><tbody>
 ${intervalRow('switches warned', score.detection, percentWords)}
 ${intervalRow('warnings that came true', score.cameTrue, percentWords)}
 ${intervalRow('false alarm ratio', score.falseRatio, percentWords)}
 ${intervalRow(`false warnings ${unit.words}`, score.falsePerHour, rateWords(unit))}
-<tr><th>lead: median</th><td class="n">${figure(lead.median, spanWords)}</td><td>10 % to 90 %: ${figure(lead.p10, spanWords)} to ${figure(lead.p90, spanWords)}; of a warner that knows nothing: ${figure(lead.random, spanWords)}</td></tr>
-<tr><th>skill: warned less time in spans</th><td class="n">${figure(score.skill, hundredthWords)}</td><td>p ${figure(score.pValue, shortWords)}; ${figure(score.tau, percentWords)} of the time lay in a span; share of a perfect warner's skill: ${figure(score.skillShare, percentWords)}</td></tr>
+<tr><th>lead: median</th><td class="n">${figure(lead.median, spanWords)}</td><td>10 % to 90 %: ${figure(lead.p10, spanWords)} to ${figure(lead.p90, spanWords)}; by chance: ${figure(lead.random, spanWords)}</td></tr>
+<tr><th>skill</th><td class="n">${figure(score.skill, hundredthWords)}</td><td>share warned less ${figure(score.tau, percentWords)} of the time in spans; ${figure(score.skillShare, percentWords)} of a perfect warner's; p\u00a0${figure(score.pValue, shortWords)}</td></tr>
 <tr><th>switches</th><td class="n">${count(switches.total)}</td><td>${counted(switches)}</td></tr>
 <tr><th>warnings</th><td class="n">${count(warnings.total)}</td><td>${counted(warnings)}</td></tr>
 <tr><th>watched</th><td class="n">${figure(score.watchedSeconds, spanWords)}</td><td>with a full window</td></tr>

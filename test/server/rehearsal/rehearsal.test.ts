@@ -106,6 +106,16 @@ describe('a rehearsal with a search', () => {
     expect(result.table.rows[result.plainRow]).toBeDefined();
   });
 
+  it('has the point at which each variable and baseline was judged on its curve, which ascends in strictness', () => {
+    for (const { name, skill, detection, cameTrue, curve } of result.contenders) {
+      const own = curve.filter((one) => one.skill === skill && one.detection === detection);
+      expect([name, own.map((one) => one.cameTrue)]).toEqual([name, expect.arrayContaining([cameTrue])]);
+      const thresholds = curve.map(({ threshold }) => threshold);
+      const ascending = [...thresholds].sort((a, b) => a - b);
+      expect([ascending, ascending.toReversed()]).toContainEqual(thresholds);
+    }
+  });
+
   it('lists the switches it scored, and what part they belong to', () => {
     const heard = live(task, result, 0);
     expect(result.switches.map(({ at, part }) => [at, part])).toEqual(
