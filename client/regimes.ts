@@ -12,23 +12,26 @@ export interface Stretch {
  *
  * @param switches  ascending in time
  * @param regimeNow the regime at `to`; null: not known
+ * @param since     before this nothing is known of regimes
  */
 export function secondRegime(
   switches: readonly Pick<SwitchEvent, 'at' | 'from' | 'to'>[],
   from: number,
   to: number,
   regimeNow: number | null,
+  since = Number.NEGATIVE_INFINITY,
 ): Stretch[] {
   const stretches: Stretch[] = [];
+  const begin = Math.max(from, since);
   const add = (regime: number, start: number, end: number) => {
     if (regime % 2 === 1 && end > from && start < to)
       stretches.push({ from: Math.max(start, from), to: Math.min(end, to) });
   };
   if (switches.length === 0) {
-    if (regimeNow !== null) add(regimeNow, from, to);
+    if (regimeNow !== null) add(regimeNow, begin, to);
     return stretches;
   }
-  add(switches[0]!.from, from, switches[0]!.at);
+  add(switches[0]!.from, begin, switches[0]!.at);
   for (let i = 0; i < switches.length; i++) {
     const { at, to: regime } = switches[i]!;
     const next = switches[i + 1];

@@ -56,7 +56,7 @@ export function promiseText(watch: WatchState): { share: string; where: string }
   const interval = intervalText(watch.promise?.cameTrue);
   return {
     share: `${share} such warnings came true`,
-    where: interval === null ? 'in rehearsal' : `in rehearsal (${interval})`,
+    where: interval === null ? 'in rehearsal' : `in rehearsal, repeats apart (${interval})`,
   };
 }
 
@@ -82,7 +82,7 @@ export function unwarnedText(watch: WatchState): string | null {
 
 /** One sentence on how a watch has done live, beside what rehearsal promised. */
 export function gradeSentence(watch: WatchState, name: string): string {
-  const grade = watch.grade;
+  const grade = watch.gradeAtDelivery;
   const judged = grade === null ? 0 : grade.switches.total - grade.switches.blind;
   if (grade === null || judged + grade.warnings.total === 0)
     return `${name} has met no ${watch.switchWord} and given no warning yet.`;
@@ -93,11 +93,13 @@ export function gradeSentence(watch: WatchState, name: string): string {
       : `warned ${grade.switches.warned} of ${counted(judged, watch.switchWord)}${lead}`;
   const promised = watch.promise?.cameTrue.value;
   const said =
-    promised === null || promised === undefined ? '' : ` (rehearsal said ${Math.round(promised * 100)})`;
-  const share = shareText(grade.cameTrue);
-  return share === null
+    promised === null || promised === undefined ? '' : ` (rehearsal said ${Math.round(promised * 100)} %)`;
+  const { warnings } = grade;
+  const settled = warnings.true + warnings.late + warnings.false;
+  const repeats = warnings.repeat === 0 ? '' : `, beside ${counted(warnings.repeat, 'repeat')}`;
+  return settled === 0
     ? `${name} ${warned}; no warning judged yet.`
-    : `${name} ${warned}; ${share} warnings came true${said}.`;
+    : `${name} ${warned}; ${warnings.true} of ${counted(settled, 'warning')} came true${said}${repeats}.`;
 }
 
 /** What became of a warning, in words. */
@@ -131,7 +133,12 @@ export function acknowledgedText(warning: Warning, watch: WatchState | undefined
   if (warning.acknowledgedAt !== null) {
     return warning.acknowledgedBy ? `acknowledged by ${warning.acknowledgedBy}` : 'acknowledged';
   }
-  return warning.quiet || watch?.trigger ? 'nobody was asked' : 'unacknowledged';
+  return nobodyAsked(warning, watch) ? 'nobody was asked' : 'unacknowledged';
+}
+
+/** Whether a warning called nobody: too late to speak, of a trigger, or while its watch was set aside or on trial. */
+export function nobodyAsked({ called, quiet }: Warning, watch: WatchState | undefined): boolean {
+  return called === undefined ? quiet || watch?.trigger === true : !called;
 }
 
 /** The span an open warning speaks for, or what came of it and when. */

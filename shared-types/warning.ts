@@ -35,6 +35,8 @@ export interface Warning {
   acknowledgedBy: string | null;
   /** somebody or something acted on it: its outcome is then `acted`; absent or null: nobody said so */
   acted?: Acted | null;
+  /** a person was to be called by it: in use, no trigger, not set aside, in time; absent in older stores */
+  called?: boolean;
   /** it came too late to speak: made after its span began; no tone, no webhook */
   quiet: boolean;
 }

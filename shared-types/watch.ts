@@ -164,6 +164,9 @@ export interface WatchState {
   promise: import('./score.ts').Score | null;
   /** what happened live, judged by the same definitions */
   grade: import('./score.ts').Score | null;
-  /** channel time the live grade counts from */
+  /** the same as people had it: warnings made too late to speak count for nothing */
+  gradeAtDelivery: import('./score.ts').Score | null;
+  /** channel time the live grade counts from, and the one at delivery: not before the watch began */
   gradeSince: number | null;
+  heardSince: number | null;
 }

@@ -99,7 +99,16 @@ function underSignal(plot: uPlot, view: StripView | null): void {
   if (view?.watch == null) return;
   const switches = view.page.state.switches.get(view.watch.watch) ?? [];
   const end = Math.min(view.to, view.channel.newest ?? view.to);
-  hatchStretches(plot, secondRegime(switches, view.from, Math.max(end, view.from), regimeAt(view)));
+  hatchStretches(
+    plot,
+    secondRegime(
+      switches,
+      view.from,
+      Math.max(end, view.from),
+      regimeAt(view),
+      view.watch?.gradeSince ?? undefined,
+    ),
+  );
 }
 
 /** The regime at the right edge: today's only while the edge is now. */

@@ -1,6 +1,6 @@
 import { element, mark, say } from '../dom.ts';
 import type { PageState } from '../feedState.ts';
-import { acknowledgedText, gradeSentence, outcomeText, settledText } from '../warningWords.ts';
+import { acknowledgedText, gradeSentence, nobodyAsked, outcomeText, settledText } from '../warningWords.ts';
 import { clockText, minuteText } from '../words.ts';
 import { actedButton } from './dialogs.ts';
 
@@ -56,7 +56,7 @@ export function createToday(): Today {
       const watches = [...state.watches.values()].filter(
         (watch) => watch.use === 'in use' && watch.rule !== null,
       );
-      const starts = watches.map((watch) => watch.gradeSince).filter((time) => time !== null);
+      const starts = watches.map((watch) => watch.heardSince).filter((time) => time !== null);
       say(since, starts.length > 0 ? `Since ${minuteText(Math.min(...starts), today)}` : 'So far');
       const words = watches.map((watch) => gradeSentence(watch, nameOf(state, watch.watch)));
       if (words.length === 0) words.push('No watch is in use.');
@@ -99,7 +99,7 @@ function rowOf(state: PageState, id: number, today: number): HTMLTableRowElement
   const warning = state.warnings.get(id)!;
   const watch = state.watches.get(warning.watch);
   const waits =
-    warning.outcome === 'open' && warning.acknowledgedAt === null && !warning.quiet && !watch?.trigger;
+    warning.outcome === 'open' && warning.acknowledgedAt === null && nobodyAsked(warning, watch) === false;
   const another = warning.at > 1e8 && Math.floor(warning.at / 86400) !== Math.floor(today / 86400);
   const time = another ? minuteText(warning.at, today) : clockText(warning.at, 1);
   const row = element(

@@ -17,7 +17,8 @@ Sends a recording as a live stream; ends once everything is acknowledged.
   --channel NAME    a channel of the recording; may be given again (default: all)
   --as NAME         name of the channel there (default: "NAME, played"); for one channel only
   --pace 1|N|max    as fast as it was recorded, N times that, or as fast as it goes (default: 1)
-  --times now|recorded   stamp the samples from now on, or as recorded (default: now)
+  --times now|recorded   stamp the samples from now on, or as recorded (default: now). At another pace than 1 now
+                    means elapsed time: the samples keep the interval they were recorded at, which models depend on
   --data DIR        data folder of a stored:NAME recording
   --json            one JSON document about what was sent
 
@@ -90,15 +91,13 @@ interface Track {
 /** Seconds between samples; 0 for a single one. */
 const stepOf = ({ times }: RecordedChannel): number => (times.length > 1 ? usualInterval(times) : 0);
 
-function sendUntil(track: Track, until: number, shift: number, pace: number, producer: Producer): number {
+function sendUntil(track: Track, until: number, shift: number, producer: Producer): number {
   const { times, values } = track.source;
   let end = track.place;
   while (end < times.length && end - track.place < MOST_IN_FRAME && times[end]! <= until) end++;
   if (end === track.place) return 0;
-  const paced = Number.isFinite(pace) ? pace : 1;
-  // With present times a recording played faster is a faster experiment.
   const t = times.slice(track.place, end);
-  if (shift !== 0) for (let i = 0; i < t.length; i++) t[i] = shift + (t[i]! - times0(track)) / paced;
+  if (shift !== 0) for (let i = 0; i < t.length; i++) t[i] = t[i]! + shift;
   producer.send(track.as, { t, values: values.slice(track.place, end) });
   const sent = end - track.place;
   track.place = end;
@@ -116,7 +115,8 @@ async function sendAll(
 ) {
   const first = Math.min(...tracks.map(times0));
   const started = performance.now() / 1000;
-  const startedAt = Date.now() / 1000;
+  // present times at the pace of the clock; faster, and times that keep their spacing would run ahead of it
+  const shift = now ? (pace === 1 ? Date.now() / 1000 : 0) - first : 0;
   let sent = 0;
   while (tracks.some(({ place, source }) => place < source.times.length)) {
     const elapsed = performance.now() / 1000 - started;
@@ -125,12 +125,10 @@ async function sendAll(
       : nextTime(tracks) + MOST_IN_FRAME * longestStep(tracks);
     let sentNow = 0;
     for (const track of tracks) {
-      const paced = Number.isFinite(pace) ? pace : 1;
-      const shift = now ? startedAt + (times0(track) - first) / paced : 0;
       let count = 0;
       do {
         await producer.room();
-        sentNow += count = sendUntil(track, until, shift, pace, producer);
+        sentNow += count = sendUntil(track, until, shift, producer);
       } while (count === MOST_IN_FRAME && Number.isFinite(pace));
     }
     sent += sentNow;
@@ -219,7 +217,7 @@ async function stream(
       channel: as,
       unit: source.unit,
       label: `${source.channel} of ${name}`.slice(0, 200),
-      interval: (how.now && Number.isFinite(how.pace) ? 1 / how.pace : 1) * stepOf(source) || null,
+      interval: stepOf(source) || null,
     })),
     onState,
   });

@@ -194,14 +194,21 @@ function noteInterval(channel: Channel, frame: FrameToStore): void {
   if (values.length > 1 && interval > 0) channel.description = { ...channel.description, interval };
 }
 
-function stateOf(channel: Channel, { monotonic }: Moment): ChannelState {
+/** Seconds since the newest sample came; after a restart, where nothing has come yet, since its own time. */
+function ageOf({ arrivedAt, newest }: Channel, { server, monotonic }: Moment): number | null {
+  if (arrivedAt !== null) return monotonic - arrivedAt;
+  return newest === null || newest < ELAPSED_BELOW ? null : Math.max(0, server - newest);
+}
+
+function stateOf(channel: Channel, moment: Moment): ChannelState {
+  const { monotonic } = moment;
   const elapsedTime = channel.newest === null || channel.newest < ELAPSED_BELOW;
   return {
     ...channel.description,
     first: channel.first,
     newest: channel.newest,
     value: channel.value,
-    age: channel.arrivedAt === null ? null : monotonic - channel.arrivedAt,
+    age: ageOf(channel, moment),
     connected: channel.connected > 0,
     silent: isSilent(channel, monotonic),
     clockOffset: elapsedTime ? null : channel.clock.smooth,

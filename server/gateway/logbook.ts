@@ -115,8 +115,7 @@ export function entryOf(row: LogbookRow, watches: Watches): LogbookEntry {
 function ofWarning(warning: Warning, watches: Watches) {
   const watch = watches.get(warning.watch);
   const word = watch?.switchWord ?? 'switch';
-  const { outcome, acknowledgedAt, quiet } = warning;
-  const asked = !quiet && watch?.trigger !== true && watch?.use === 'in use';
+  const { outcome, acknowledgedAt } = warning;
   return {
     kind: 'warning' as const,
     at: warning.at,
@@ -126,10 +125,14 @@ function ofWarning(warning: Warning, watches: Watches) {
     by: warning.acknowledgedBy ?? '',
     text: warningText(warning, word),
     became: warningBecame(warning, word),
-    waits: outcome === 'open' && acknowledgedAt === null && asked,
+    waits: outcome === 'open' && acknowledgedAt === null && wasCalled(warning, watch),
     warning,
   };
 }
+
+/** Whether a person was called by a warning; older stores do not say, then by what the watch is now. */
+const wasCalled = ({ called, quiet }: Warning, watch: ReturnType<Watches['get']>): boolean =>
+  called ?? (!quiet && watch?.trigger !== true && watch?.use !== 'on trial');
 
 function ofSwitch(event: SwitchEvent, watches: Watches) {
   const watch = watches.get(event.watch);
@@ -171,10 +174,7 @@ export async function warningTimes(
     watches: names,
     watch: warnings.map(({ watch }) => names.indexOf(watch)),
     madeAt: warnings.map(({ madeAt }) => madeAt),
-    called: warnings.map(({ watch, quiet }) => {
-      const known = watches.get(watch);
-      return !quiet && known?.trigger !== true && known?.use !== 'on trial';
-    }),
+    called: warnings.map((warning) => wasCalled(warning, watches.get(warning.watch))),
     acknowledgedAt: warnings.map(({ acknowledgedAt }) => acknowledgedAt),
     stood: warnings.map(({ outcome, switchAt, to, at }) =>
       outcome === 'open' ? null : Math.max(0, Math.min(switchAt ?? to, to) - at),

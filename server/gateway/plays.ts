@@ -44,6 +44,8 @@ const MOST_RUNNING = 4;
 const KEPT = 20;
 /** Seconds by which a channel may be ahead of the clock and still be continued. */
 const SLACK = 1;
+/** Times from here on are Unix time, below it elapsed time. */
+const UNIX_FROM = 1e8;
 /** Of what a process complained of, so much is kept. */
 const COMPLAINT_LENGTH = 2000;
 
@@ -58,11 +60,16 @@ export function createPlays({ player, journal, channels, ingest, token }: PlaysN
   let nextId = 1;
 
   const running = () => [...entries.values()].filter(({ state }) => state.state === 'running');
-  const freeName = (channel: string): string => {
+  /** At the pace of the clock a channel goes on with present times; at another one with elapsed time, on a new channel. */
+  const takes = (name: string, pace: string): boolean => {
+    const newest = channels.newest(name);
+    return newest === null || (pace === '1' && newest >= UNIX_FROM && newest < Date.now() / 1000 + SLACK);
+  };
+  const freeName = (channel: string, pace: string): string => {
     for (let n = 1; ; n++) {
       const name = n === 1 ? `${channel.slice(0, 68)}, played` : `${channel.slice(0, 68)}, played ${n}`;
       const taken = running().some(({ state }) => state.as.includes(name));
-      if (!taken && (channels.newest(name) ?? 0) < Date.now() / 1000 + SLACK) return name;
+      if (!taken && takes(name, pace)) return name;
     }
   };
   const log = ({ recording, as }: PlayState, text: string) =>
@@ -113,7 +120,7 @@ export function createPlays({ player, journal, channels, ingest, token }: PlaysN
     start(play) {
       const channel = check(play);
       const { program, data } = player!;
-      const as = play.as ?? freeName(channel);
+      const as = play.as ?? freeName(channel, play.pace);
       const id = String(nextId++);
       const { recording, pace } = play;
       const state: PlayState = { id, recording, as: [as], pace, state: 'running', fault: null };

@@ -29,6 +29,8 @@ export interface WatchMemo {
   alarm: Alarm;
   /** channel time the live grade counts from; null until the first frame */
   gradeSince: number | null;
+  /** server clock, Unix seconds, at which it was started; absent in what older versions stored */
+  beganAt?: number;
 }
 
 /** What a watch's snapshot is stored with, so that what arrived after it can be pushed again. */
@@ -86,6 +88,9 @@ export interface RunningWatch {
 
 type LogKind = LogEntry['kind'];
 
+/** Times from here on are Unix time, below it elapsed time. */
+const UNIX_FROM = 1e8;
+
 const encoder = new Encoder({ useRecords: false });
 const decoder = new Decoder({ mapsAsObjects: true, useRecords: false });
 
@@ -120,12 +125,13 @@ export function createRunningWatch(
   let gate = createLeftOutGate(wanted, checkpoint?.gate);
   const happenings: Happening[] = [];
   const trace = createTraceBuffer();
-  const book = createWatchBook(known);
+  const book = createWatchBook(known, rule && { ...rule, interval: model.interval }, memo.beganAt ?? null);
   let snapshotBytes: Uint8Array | null = null;
   let dirty = false;
   let value: number | null = null;
   let at: number | null = null;
   let grade: WatchState['grade'] = null;
+  let gradeAtDelivery: WatchState['gradeAtDelivery'] = null;
   let graded = false;
 
   const save = () =>
@@ -170,6 +176,7 @@ export function createRunningWatch(
       acknowledgedAt: null,
       acknowledgedBy: null,
       quiet: now > from,
+      called: now <= from && memo.use === 'in use' && !trigger && memo.alarm.setAside === null,
     };
     book.issue(warning);
     around.journal.issue(warning);
@@ -240,16 +247,12 @@ export function createRunningWatch(
 
   const updateGrade = () => {
     graded = true;
-    grade =
-      rule === null || model.regime === null
-        ? null
-        : liveScore(book.tally, {
-            seconds: watch.watchedSeconds(),
-            covered: watch.coveredSeconds(),
-            interval: model.interval,
-            leastLead: rule.leastLead,
-            horizon: rule.horizon,
-          });
+    if (rule === null || model.regime === null) return;
+    const { leastLead, horizon } = rule;
+    const [seconds, covered] = [watch.watchedSeconds(), watch.coveredSeconds()];
+    const watched = { seconds, covered, interval: model.interval, leastLead, horizon };
+    grade = liveScore(book.tally, watched);
+    gradeAtDelivery = liveScore(book.heard, watched);
   };
 
   const checkpointNow = (): Checkpoint => ({
@@ -284,6 +287,12 @@ export function createRunningWatch(
   const obey = (event: AlarmEvent, kind: LogKind, text: string, by: string) => {
     if (apply(event)) log(kind, text, null, by);
   };
+
+  /** channel time from which somebody could hear its warnings; what came before was recorded before it began */
+  const heardSince = () =>
+    memo.gradeSince === null || memo.beganAt === undefined || memo.gradeSince < UNIX_FROM
+      ? memo.gradeSince
+      : Math.max(memo.gradeSince, memo.beganAt);
 
   /** the watched channels and those that conditions read */
   const reads = () => [...new Set([...wanted, ...gate.wants()])];
@@ -449,7 +458,9 @@ export function createRunningWatch(
         regimeNow: watch.regimeNow(),
         promise: model.score,
         grade,
+        gradeAtDelivery,
         gradeSince: memo.gradeSince,
+        heardSince: heardSince(),
       };
     },
   };

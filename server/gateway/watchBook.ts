@@ -4,8 +4,9 @@ import { createTally, type Tally, tallySwitch, tallyWarning } from './liveScore.
 
 /** A watch's warnings and switches: what was told, so that a replay does not tell it again, and what became of it. */
 export interface WatchBook {
-  /** counts since the grade began */
+  /** counts since the grade began; and as people had it, see `hearing` */
   readonly tally: Tally;
+  readonly heard: Tally;
   /** the warning issued at a channel time */
   warningAt(at: number): Warning | undefined;
   warning(id: number): Warning | undefined;
@@ -28,26 +29,57 @@ export interface WatchBook {
 /** Warnings kept in memory, to be known again in a replay and to be settled. */
 const WARNINGS_KEPT = 2000;
 
-/** Creates a book of what the store knows, oldest first. */
-export function createWatchBook(known: { warnings: Warning[]; switches: SwitchEvent[] }): WatchBook {
+/** Times from here on are Unix time, below it elapsed time. */
+const UNIX_FROM = 1e8;
+
+/**
+ * Creates a book of what the store knows, oldest first.
+ *
+ * @param spans   of the watch rule, seconds; null: it has none
+ * @param beganAt server clock, Unix seconds: what bears an earlier time nobody could have been warned of; null: all counts
+ */
+export function createWatchBook(
+  known: { warnings: Warning[]; switches: SwitchEvent[] },
+  spans: { leastLead: number; horizon: number; interval: number } | null = null,
+  beganAt: number | null = null,
+): WatchBook {
   const warnings = new Map<number, Warning>();
   const open = new Set<Warning>();
   const switchesToldAt = new Set<number>();
   let tally = createTally();
+  let heard = createTally();
 
+  /** Whether anybody could have heard: not of what was recorded before the watch began. */
+  const countsFor = (at: number) => beganAt === null || at < UNIX_FROM || at >= beganAt;
+  const count = (warning: Warning, by: 1 | -1) => {
+    tallyWarning(tally, warning, by);
+    if (!warning.quiet && countsFor(warning.at)) tallyWarning(heard, warning, by);
+  };
+  /** A switch as people had it: warned only by a warning that was made in time to speak. */
+  const asHeard = (event: SwitchEvent): SwitchEvent => {
+    if (spans === null || event.outcome !== 'warned') return event;
+    const { leastLead, horizon, interval } = spans;
+    const steps = (seconds: number) => Math.round(seconds / interval);
+    const before = (warning: Warning) => steps(event.at - warning.at);
+    for (const warning of warnings.values()) {
+      if (warning.quiet || before(warning) <= steps(leastLead) || before(warning) > steps(horizon)) continue;
+      return { ...event, lead: event.at - warning.at };
+    }
+    return { ...event, outcome: 'late', lead: null };
+  };
   const note = (warning: Warning) => {
     warnings.set(warning.at, warning);
     if (warning.outcome === 'open') open.add(warning);
-    tallyWarning(tally, warning, 1);
+    count(warning, 1);
     if (warnings.size <= WARNINGS_KEPT) return;
     const oldest = warnings.values().next().value!;
     warnings.delete(oldest.at);
     open.delete(oldest);
   };
   const changed = (warning: Warning, change: () => void): Warning => {
-    tallyWarning(tally, warning, -1);
+    count(warning, -1);
     change();
-    tallyWarning(tally, warning, 1);
+    count(warning, 1);
     if (warning.outcome === 'open') open.add(warning);
     else open.delete(warning);
     return warning;
@@ -55,6 +87,7 @@ export function createWatchBook(known: { warnings: Warning[]; switches: SwitchEv
   const meet = (event: SwitchEvent) => {
     switchesToldAt.add(event.at);
     tallySwitch(tally, event);
+    if (countsFor(event.at)) tallySwitch(heard, asHeard(event));
   };
   for (const warning of known.warnings) note(warning);
   for (const event of known.switches) meet(event);
@@ -66,6 +99,9 @@ export function createWatchBook(known: { warnings: Warning[]; switches: SwitchEv
   return {
     get tally() {
       return tally;
+    },
+    get heard() {
+      return heard;
     },
     warningAt: (at) => warnings.get(at),
     warning: byId,
@@ -119,6 +155,7 @@ export function createWatchBook(known: { warnings: Warning[]; switches: SwitchEv
     },
     beginAnew() {
       tally = createTally();
+      heard = createTally();
     },
   };
 }

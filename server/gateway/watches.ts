@@ -213,6 +213,7 @@ export function createWatches(needs: WatchesNeeds): Watches {
       use: wanted.use,
       alarm: wanted.latching ? { ...NO_ALARM, latching: true } : NO_ALARM,
       gradeSince: null,
+      beganAt: needs.serverTime(),
     };
     let watch: RunningWatch;
     try {

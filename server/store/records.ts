@@ -1,5 +1,5 @@
 import type { Database } from 'better-sqlite3';
-import type { LogEntry, SwitchEvent, Warning } from '../../shared-types/warning.ts';
+import type { GradedOutcome, LogEntry, SwitchEvent, Warning } from '../../shared-types/warning.ts';
 import type { StoredWatch } from './store.ts';
 import { StoreError } from './storeError.ts';
 
@@ -106,19 +106,29 @@ function eventRecords(database: Database) {
 
 /** A warning said again by a replay knows nothing of what people and the grading did to it since. */
 function mergeReplayed(warning: Warning, stored: Warning): Warning {
-  const graded = warning.outcome === 'open' ? stored : warning;
+  const told = gradedOf(warning);
+  const graded = told === 'open' ? stored : warning;
+  const outcome = gradedOf(graded);
+  // a replay does not speak of it; null takes it back
+  const acted = warning.acted === undefined ? stored.acted : warning.acted;
   return {
     ...warning,
     madeAt: stored.madeAt,
     quiet: stored.quiet,
+    ...(stored.called === undefined ? {} : { called: stored.called }),
     deliveredAt: warning.deliveredAt ?? stored.deliveredAt,
     acknowledgedAt: warning.acknowledgedAt ?? stored.acknowledgedAt,
     acknowledgedBy: warning.acknowledgedBy ?? stored.acknowledgedBy,
-    outcome: graded.outcome,
+    outcome: acted ? 'acted' : outcome,
+    ...(acted === undefined ? {} : { acted: acted && { ...acted, outcome } }),
     switchAt: graded.switchAt,
     lead: graded.lead,
   };
 }
+
+/** What a warning is by grading alone, whether it was acted on or not. */
+const gradedOf = ({ outcome, acted }: Warning): GradedOutcome =>
+  acted ? acted.outcome : outcome === 'acted' ? 'open' : outcome;
 
 function events<E extends { id: number; watch: string; at: number }>(
   database: Database,

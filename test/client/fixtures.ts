@@ -88,6 +88,8 @@ export function watch(changes: Partial<WatchState> = {}): WatchState {
     regimeNow: 0,
     promise: score(),
     grade: null,
+    gradeAtDelivery: null,
+    heardSince: null,
     gradeSince: null,
     ...changes,
   };

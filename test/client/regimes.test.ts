@@ -37,4 +37,11 @@ describe('the second regime is where the switches say', () => {
       { from: 30, to: 50 },
     ]);
   });
+
+  it('knows nothing of the time before the watch began', () => {
+    const change = { at: 50, from: 1, to: 0 };
+    expect(secondRegime([change], 0, 100, 0, 30)).toEqual([{ from: 30, to: 50 }]);
+    expect(secondRegime([], 0, 100, 1, 30)).toEqual([{ from: 30, to: 100 }]);
+    expect(secondRegime([], 0, 20, 1, 30)).toEqual([]);
+  });
 });

@@ -41,7 +41,7 @@ describe('an open warning', () => {
   it('says what such warnings are worth, and nothing without a rehearsal', () => {
     expect(promiseText(watch())).toEqual({
       share: '97 of 100 such warnings came true',
-      where: 'in rehearsal (95 % interval 92 to 99)',
+      where: 'in rehearsal, repeats apart (95 % interval 92 to 99)',
     });
     expect(promiseText(watch({ promise: null }))).toBeNull();
   });
@@ -91,11 +91,11 @@ describe('today’s grade', () => {
   it('is one sentence beside what rehearsal promised', () => {
     const grade = score({
       switches: { total: 331, warned: 268, late: 40, missed: 23, blind: 0 },
-      cameTrue: { value: 0.95, low: 0.9, high: 0.97 },
+      warnings: { total: 300, true: 190, repeat: 100, late: 4, false: 6, open: 0, unseen: 0, acted: 0 },
       lead: { median: 15.4, p10: null, p90: null, random: null },
     });
-    expect(gradeSentence(watch({ grade }), 'Loop A')).toBe(
-      'Loop A warned 268 of 331 reversals, median lead 15 s; 95 of 100 warnings came true (rehearsal said 97).',
+    expect(gradeSentence(watch({ gradeAtDelivery: grade }), 'Loop A')).toBe(
+      'Loop A warned 268 of 331 reversals, median lead 15 s; 190 of 200 warnings came true (rehearsal said 97 %), beside 100 repeats.',
     );
   });
 

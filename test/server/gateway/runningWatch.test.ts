@@ -154,6 +154,19 @@ describe('the alarm of a running watch', () => {
   });
 });
 
+describe('whom a warning called', () => {
+  it('is nobody while its watch is shelved, and is said in the warning', () => {
+    const { at, running, told } = scripted();
+    at(0, warning(0));
+    running.act({ action: 'shelve', seconds: 600, reason: 'calibrating', by: 'Ada' });
+    at(40, warning(40));
+    expect(told.filter(({ outcome }) => outcome === 'open').map(({ at, called }) => [at, called])).toEqual([
+      [0, true],
+      [40, false],
+    ]);
+  });
+});
+
 describe('a warning that was acted on', () => {
   it('is counted apart, outside every ratio, acknowledged, and logged with who did what', () => {
     const { at, running, log, told } = scripted();
