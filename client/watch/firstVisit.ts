@@ -66,13 +66,13 @@ function lines(address: string): Node[] {
 
 function producer(address: string): string {
   return `import WebSocket from 'ws';
-
-const measure = () => Math.sin(Date.now() / 3000);   // your sensor's reading here
-const socket = new WebSocket('${address}', 'foreshift.ingest.1');
-socket.on('open', () => {
-  setInterval(() => {
-    socket.send(JSON.stringify({ channel: 'My channel', values: [measure()], dt: 0.2 }));
-  }, 200);
-});
-socket.on('message', (answer) => console.log(String(answer)));`;
+const readSensor = () => Math.sin(Date.now() / 3000); // your instrument here
+(function connect() {
+  const socket = new WebSocket('${address}', 'foreshift.ingest.1');
+  const frame = () => JSON.stringify({ channel: 'mine', dt: 0.1, values: [readSensor()] });
+  const timer = setInterval(() => socket.readyState === 1 && socket.send(frame()), 100);
+  socket.on('message', (reply) => console.log(String(reply))); // errors come in words
+  socket.on('error', (error) => console.log(error.message));
+  socket.on('close', () => clearInterval(timer) ?? setTimeout(connect, 1000));
+})();`;
 }

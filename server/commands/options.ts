@@ -160,7 +160,12 @@ export async function runCommand(name: string, action: () => Promise<number>): P
     const badInput =
       error instanceof InputError ||
       (typeof code === 'string' && (code.startsWith('ERR_PARSE_ARGS') || code === 'ENOENT'));
-    const remedy = String(code).startsWith('ERR_PARSE_ARGS') ? `; see foreshift ${name} --help` : '';
+    const ambiguous = /^Option '(--[\w-]+).*' argument is ambiguous/.exec(sentence ?? '');
+    const remedy = ambiguous
+      ? `; a value that begins with a minus sign is written with an equals sign, ${ambiguous[1]}=-1`
+      : String(code).startsWith('ERR_PARSE_ARGS')
+        ? `; see foreshift ${name} --help`
+        : '';
     process.stderr.write(`foreshift ${name}: ${sentence}${remedy}\n`);
     return badInput ? 2 : 1;
   }

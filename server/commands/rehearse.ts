@@ -138,6 +138,7 @@ async function write(result: RehearsalResult, { out, report }: OptionValues): Pr
 async function writeText(option: string, path: string, text: string): Promise<void> {
   try {
     await writeFile(path, text);
+    process.stderr.write(`${path} is written\n`);
   } catch (error) {
     throw new InputError(
       'NOT_WRITTEN',

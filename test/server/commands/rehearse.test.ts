@@ -135,6 +135,12 @@ describe('foreshift rehearse', () => {
     expect(verdict.kind).not.toBe('useful');
   });
 
+  it('says how a value with a minus sign is written', async () => {
+    const { code, err } = await run(recording, '--channel', 'Loop B', '--threshold', '-1');
+    expect(code).toBe(2);
+    expect(err).toContain('is written with an equals sign, --threshold=-1');
+  });
+
   it('lists the last forty warnings after a search, and says where all of them are', async () => {
     const { out } = await run(recording, ...SEARCH);
     const lines = out.trim().split('\n');
