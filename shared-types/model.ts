@@ -1,3 +1,4 @@
+import type { VerdictKind } from './rehearsal.ts';
 import type { Score } from './score.ts';
 import type { RegimeRule, WatchRule } from './watch.ts';
 
@@ -34,6 +35,8 @@ export interface Model {
   switchWord: string;
   validity: ValidityLimits | null;
   score: Score | null;
+  /** of the rehearsal that chose it; absent where it was not rehearsed, and in older files */
+  verdict?: { kind: VerdictKind; than: string | null };
   /** what other thresholds would have done on the judged part, in ascending strictness; absent in older files */
   operating?: OperatingPoint[];
   provenance: Provenance;

@@ -160,6 +160,8 @@ export interface WatchState {
   at: number | null;
   /** index of the regime the channel is in, null between regimes or before the first is known */
   regimeNow: number | null;
+  /** the verdict of the rehearsal that chose its settings, in words; null: it was not rehearsed */
+  verdict: string | null;
   /** what rehearsal promised; null when the model carries no score */
   promise: import('./score.ts').Score | null;
   /** what happened live, judged by the same definitions */

@@ -42,7 +42,7 @@ function part(title: string, ...content: HTMLElement[]): HTMLElement {
   return element('section', 'sheetPart', element('h4', '', title), ...content);
 }
 
-function promise({ score, switchWord }: ModelEvidence): HTMLElement {
+function promise({ score, switchWord, verdict }: ModelEvidence): HTMLElement {
   if (score === null)
     return element(
       'p',
@@ -54,7 +54,14 @@ function promise({ score, switchWord }: ModelEvidence): HTMLElement {
     head.scope = 'row';
     return element('tr', '', head, element('td', 'figure', figure), element('td', 'soft', interval));
   });
-  return element('table', 'sheetFigures', element('tbody', '', ...rows));
+  const words =
+    verdict === undefined ? '' : `Verdict: ${[verdict.kind, verdict.than].filter(Boolean).join(' ')}.`;
+  return element(
+    'div',
+    '',
+    element('p', 'sheetVerdict', words),
+    element('table', 'sheetFigures', element('tbody', '', ...rows)),
+  );
 }
 
 function structureText({ diagnostics: { antisymmetryDefect, eigenvalues } }: ModelEvidence): string {

@@ -32,12 +32,13 @@ export function createSide(): Side {
   const variable = element('p', 'variable');
   const model = element('p', 'model');
   const rule = element('p', 'model');
+  const verdict = element('p', 'model');
   const sight = element('p', 'sight');
   const likeness = element('p', 'model');
   const valueLine = element('p', 'value', number, ' ', unit);
   const who = element('div', 'who', name, label);
   const upper = element('div', 'upper', who, valueLine, badge, remarks);
-  const lower = element('div', 'lower', variable, model, rule, sight, likeness);
+  const lower = element('div', 'lower', variable, model, rule, verdict, sight, likeness);
   let said = '';
   return {
     root: element('div', 'side', upper, lower),
@@ -63,6 +64,8 @@ export function createSide(): Side {
         watch === null ? null : `model ${watch.model} · window ${spanText(watch.window)}, rank ${watch.rank}`,
       );
       say(rule, watch === null ? null : ruleText(watch, channel.unit));
+      say(verdict, watch?.verdict == null ? null : `rehearsal: ${watch.verdict}`);
+      mark(verdict, 'data-verdict', watch?.verdict ?? null);
       say(sight, watch === null ? null : (leftOutText(watch) ?? sightText(watch.sight)));
       say(
         likeness,

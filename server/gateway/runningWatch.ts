@@ -456,6 +456,7 @@ export function createRunningWatch(
         value,
         at,
         regimeNow: watch.regimeNow(),
+        verdict: model.verdict ? [model.verdict.kind, model.verdict.than].filter(Boolean).join(' ') : null,
         promise: model.score,
         grade,
         gradeAtDelivery,

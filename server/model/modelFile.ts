@@ -1,7 +1,16 @@
 import { MODEL_FILE_VERSION, type Model } from '../../shared-types/model.ts';
+import type { VerdictKind } from '../../shared-types/rehearsal.ts';
 import { RegimeRule, WatchRule } from '../../shared-types/watch.ts';
 import { InputError } from '../signal/inputError.ts';
 import { decodeFloats, encodeFloats } from './base64.ts';
+
+const VERDICT_KINDS: readonly VerdictKind[] = [
+  'too few events',
+  'no skill',
+  'no better than',
+  'weak',
+  'useful',
+];
 
 /** A model file as parsed: arrays of numbers are still base64 text. */
 type Document = { [key: string]: unknown };
@@ -112,9 +121,19 @@ function assemble(document: Document): Model {
     validity:
       document.validity === null ? null : (part(document, 'validity') as unknown as Model['validity']),
     score: document.score === null ? null : (part(document, 'score') as unknown as Model['score']),
+    ...verdictOf(document),
     ...operatingOf(document),
     provenance: part(document, 'provenance') as unknown as Model['provenance'],
   };
+}
+
+/** A verdict came later than version 1, and only a rehearsed model has one. */
+function verdictOf(document: Document): Pick<Model, 'verdict'> {
+  if (document.verdict === undefined) return {};
+  const { kind, than } = part(document, 'verdict');
+  const known = VERDICT_KINDS.find((each) => each === kind);
+  if (known === undefined) throw damaged('its "verdict" cannot be used');
+  return { verdict: { kind: known, than: typeof than === 'string' ? than : null } };
 }
 
 /** Operating points came later than version 1: files without them stay as they are. */

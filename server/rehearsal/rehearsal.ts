@@ -158,7 +158,7 @@ function judgeAndReport(
         part: one.at < judgedFrom[recording]! - interval / 2 ? ('tuning' as const) : ('judged' as const),
       })),
     ),
-    model: modelToJson(model),
+    model: modelToJson({ ...model, verdict: { kind: verdict.kind, than: verdict.than } }),
     seconds: 0,
     program: task.program,
     at: task.at,

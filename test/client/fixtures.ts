@@ -88,6 +88,7 @@ export function watch(changes: Partial<WatchState> = {}): WatchState {
     regimeNow: 0,
     promise: score(),
     grade: null,
+    verdict: null,
     gradeAtDelivery: null,
     heardSince: null,
     gradeSince: null,

@@ -126,4 +126,12 @@ describe('the summary of a fit', () => {
       expect(summary[key]).toBeDefined();
     }
   });
+
+  it('carries the verdict of its rehearsal, which older files lack, and refuses one it does not know', () => {
+    const verdict = { kind: 'no better than', than: 'a clock' } as const;
+    const text = modelToJson({ ...complete, verdict });
+    expect(modelFromJson(text).verdict).toEqual(verdict);
+    expect(modelFromJson(modelToJson(complete))).not.toHaveProperty('verdict');
+    expect(codeOf(text.replace('no better than', 'splendid'))).toBe('MODEL_DAMAGED');
+  });
 });
