@@ -13,21 +13,21 @@ const HANG_UP_AFTER = 6000;
  * The server's feed, connected again for ever. Messages that cannot be decoded are passed over.
  *
  * @param address WebSocket address of `/feed`
- * @param look$   what the page draws; the newest is said at each connection and whenever it changes
+ * @param say$    what the page says: what it draws, its newest again at each connection, and trials it has shown
  */
-export function feed(address: string, look$: Observable<FeedRequest>): Observable<FeedHappening> {
-  return attempt(address, look$).pipe(reconnecting((happening) => happening.kind === 'message'));
+export function feed(address: string, say$: Observable<FeedRequest>): Observable<FeedHappening> {
+  return attempt(address, say$).pipe(reconnecting((happening) => happening.kind === 'message'));
 }
 
-function attempt(address: string, look$: Observable<FeedRequest>): Observable<FeedHappening> {
+function attempt(address: string, say$: Observable<FeedRequest>): Observable<FeedHappening> {
   return new Observable((subscriber) => {
     const socket = new WebSocket(address, FEED_PROTOCOL);
     socket.binaryType = 'arraybuffer';
-    let looks: Subscription | null = null;
+    let saying: Subscription | null = null;
     let silence = setTimeout(() => socket.close(), HANG_UP_AFTER);
     socket.onopen = () => {
       subscriber.next({ kind: 'open' });
-      looks = look$.subscribe((request) => socket.send(JSON.stringify(request)));
+      saying = say$.subscribe((request) => socket.send(JSON.stringify(request)));
     };
     socket.onmessage = (event) => {
       clearTimeout(silence);
@@ -41,7 +41,7 @@ function attempt(address: string, look$: Observable<FeedRequest>): Observable<Fe
     };
     return () => {
       clearTimeout(silence);
-      looks?.unsubscribe();
+      saying?.unsubscribe();
       socket.onopen = socket.onmessage = socket.onclose = null;
       socket.close();
     };

@@ -1,4 +1,5 @@
 import type { ChannelState } from '../shared-types/channel.ts';
+import type { MeasuredDelay } from '../shared-types/delivery.ts';
 import type { FeedMessage, Welcome } from '../shared-types/feed.ts';
 import type { LogEntry, SwitchEvent, Warning } from '../shared-types/warning.ts';
 import type { WatchState } from '../shared-types/watch.ts';
@@ -22,6 +23,8 @@ export interface PageState {
   switches: ReadonlyMap<string, readonly SwitchEvent[]>;
   /** the newest `ENTRIES_KEPT`, oldest first */
   log: readonly LogEntry[];
+  /** by watch, the newest measured one */
+  delays: ReadonlyMap<string, MeasuredDelay>;
 }
 
 export const WARNINGS_KEPT = 500;
@@ -42,6 +45,7 @@ export const NOTHING_YET: PageState = {
   warnings: new Map(),
   switches: new Map(),
   log: [],
+  delays: new Map(),
 };
 
 /** The state after a message. Kinds it does not know, and drawing data, leave it as it is (the same object). */
@@ -67,6 +71,8 @@ export function reduce(state: PageState, message: FeedMessage): PageState {
     }
     case 'log':
       return { ...state, log: [...state.log, message.entry].slice(-ENTRIES_KEPT) };
+    case 'delay':
+      return { ...state, delays: put(state.delays, message.delay.watch, message.delay) };
     case 'trouble':
       return { ...state, trouble: message.text };
     case 'beat':
@@ -107,6 +113,7 @@ function welcomed(welcome: Welcome): PageState {
     watches: new Map(welcome.watches.map((watch) => [watch.watch, watch])),
     warnings: new Map(welcome.warnings.map((warning) => [warning.id, warning])),
     switches,
+    delays: new Map((welcome.delays ?? []).map((delay) => [delay.watch, delay])),
   };
 }
 

@@ -1,5 +1,6 @@
 import 'uplot/dist/uPlot.min.css';
-import { ReplaySubject } from 'rxjs';
+import { merge, ReplaySubject, Subject } from 'rxjs';
+import type { TrialSeen } from '../shared-types/delivery.ts';
 import type { FeedRequest } from '../shared-types/feed.ts';
 import { leaveIfOut, signedIn } from './access/signedIn.ts';
 import { enter } from './access/signIn.ts';
@@ -14,8 +15,14 @@ const host = document.getElementById('page')!;
 const who = await enter(host);
 const signedInLine = signedIn(who);
 const look$ = new ReplaySubject<FeedRequest>(1);
+const echo$ = new Subject<TrialSeen>();
 const navigation = createNavigation(PAGES);
-const page = mountWatch(host, navigation.root, (look) => look$.next({ look }));
+const page = mountWatch(
+  host,
+  navigation.root,
+  (look) => look$.next({ look }),
+  (seen) => echo$.next(seen),
+);
 const address = `${location.protocol === 'https:' ? 'wss' : 'ws'}://${location.host}/feed`;
 
 if (signedInLine !== null) {
@@ -33,7 +40,7 @@ const lookAtPlace = () => {
 };
 addEventListener('hashchange', lookAtPlace);
 lookAtPlace();
-feed(address, look$).subscribe((happening) => {
+feed(address, merge(look$, echo$)).subscribe((happening) => {
   if (happening.kind === 'message') page.receive(happening.message);
   else if (happening.kind === 'open') page.opened();
   else {

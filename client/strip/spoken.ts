@@ -1,5 +1,6 @@
 import type { AlarmState, WatchState } from '../../shared-types/watch.ts';
 import { changes } from '../access/changes.ts';
+import { delayLine } from '../delay/words.ts';
 import { button, element, mark, say } from '../dom.ts';
 import { headline, lastText, leftText, phaseOf, promiseText, unwarnedText } from '../warningWords.ts';
 import { clockText, leftOutText } from '../words.ts';
@@ -9,6 +10,7 @@ import { type StripView, spokenFor } from './view.ts';
 export interface StripActions {
   acknowledge(watch: string, upTo: number): Promise<void>;
   shelve(watch: string): void;
+  measureDelay(watch: string): void;
   reset(watch: string): Promise<void>;
   putBack(watch: string, from: 'shelved' | 'out of service'): Promise<void>;
   explainWatching(channel: string, has: 'nothing' | 'no rule'): void;
@@ -28,6 +30,7 @@ export function createSpoken(actions: StripActions): Spoken {
   const share = element('p', 'share');
   const where = element('p', 'where');
   const left = element('p', 'left');
+  const delay = element('p', 'delayLine');
   const fault = element('p', 'fault');
   fault.setAttribute('role', 'alert');
   let view: StripView | null = null;
@@ -65,11 +68,17 @@ export function createSpoken(actions: StripActions): Spoken {
     '',
     doing((now) => actions.explainWatching(now.channel.channel, now.watch === null ? 'nothing' : 'no rule')),
   );
-  for (const each of [acknowledge, reset, shelve, back]) changes(each);
-  const buttons = element('p', 'buttons', acknowledge, reset, shelve, back, explain);
+  const measure = button(
+    'Measure my delay',
+    '',
+    doing((now) => actions.measureDelay(now.watch!.watch)),
+  );
+  mark(measure, 'aria-keyshortcuts', 'd');
+  for (const each of [acknowledge, reset, shelve, back, measure]) changes(each);
+  const buttons = element('p', 'buttons', acknowledge, reset, shelve, back, explain, measure);
   say(fault, null);
   return {
-    root: element('div', 'spoken', what, when, until, share, where, buttons, left, fault),
+    root: element('div', 'spoken', what, when, until, share, where, buttons, left, delay, fault),
     update: (next) => {
       view = next;
       const { watch } = next;
@@ -88,8 +97,14 @@ export function createSpoken(actions: StripActions): Spoken {
       back.hidden = !(watch?.state === 'shelved' || watch?.state === 'out of service');
       say(back, back.hidden ? null : watch?.state === 'shelved' ? 'Unshelve' : 'Return to service');
       explain.hidden = !(watch === null || watch.rule === null);
-      buttons.hidden = [acknowledge, reset, shelve, back, explain].every((each) => each.hidden);
-      for (const each of [acknowledge, reset, shelve, back]) each.disabled = next.page.lost;
+      // while a warning waits for a person there is something better to do; its key still works
+      measure.hidden =
+        watch === null || watch.rule === null || (asks && words.open) || next.page.zoom !== null;
+      const known = watch === null ? undefined : next.page.state.delays.get(watch.watch);
+      say(delay, known === undefined || words.open ? null : delayLine(known));
+      mark(delay, 'data-eaten', known?.left != null && known.left <= 0 ? '' : null);
+      buttons.hidden = [acknowledge, reset, shelve, back, explain, measure].every((each) => each.hidden);
+      for (const each of [acknowledge, reset, shelve, back, measure]) each.disabled = next.page.lost;
     },
   };
 }

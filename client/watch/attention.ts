@@ -10,6 +10,8 @@ export interface Attention {
   canNotify(): boolean;
   toggleTone(): Promise<void>;
   toggleNotices(): Promise<void>;
+  /** strikes the tone for a trial; resolves with performance.now() of its beginning, null when there is none */
+  try(words: string): Promise<number | null>;
   /** title and icon for the warnings that wait for a person; `page`: the name of the page that is shown */
   show(page: string, waiting: readonly string[]): void;
   /** one new warning, once; quiet ones never get here */
@@ -36,6 +38,20 @@ export function createAttention(): Attention {
       notices = !notices && mayNotify();
       remember('notices', notices ? 'on' : 'off');
     },
+    try: async (words) => {
+      if (notices) new Notification(words, { tag: 'foreshift-trial' });
+      if (!tone) return null;
+      sound ??= new AudioContext();
+      // a browser that was not touched yet plays nothing, and does not say so
+      await Promise.race([
+        sound.resume(),
+        new Promise((resolve) => setTimeout(resolve, RESUME_MILLISECONDS)),
+      ]);
+      if (sound.state !== 'running') return null;
+      strike(sound);
+      const latency = TONE_SECONDS + sound.baseLatency + (sound.outputLatency || 0);
+      return performance.now() + 1000 * latency;
+    },
     show: (page, waiting) => {
       const title = waiting.length === 0 ? `${page} · Foreshift` : `▲ ${waiting.join(', ')} · Foreshift`;
       if (title === shown) return;
@@ -58,11 +74,15 @@ function mayNotify(): boolean {
   return 'Notification' in globalThis && Notification.permission === 'granted';
 }
 
+/** The tone begins so long after it is asked for, so that its first note is whole. */
+const TONE_SECONDS = 0.02;
+const RESUME_MILLISECONDS = 500;
+
 /** Two soft notes, a fifth apart, within half a second. */
 function strike(sound: AudioContext): void {
   void sound.resume();
   [523.25, 783.99].forEach((frequency, i) => {
-    const begin = sound.currentTime + 0.02 + 0.18 * i;
+    const begin = sound.currentTime + TONE_SECONDS + 0.18 * i;
     const pitch = sound.createOscillator();
     const loudness = sound.createGain();
     pitch.type = 'sine';

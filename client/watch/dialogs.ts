@@ -11,7 +11,8 @@ export function whoIsHere(): string {
   return recall('by', '');
 }
 
-function modal(title: string, ...children: Node[]): HTMLDialogElement {
+/** A dialog with a heading, opened; gone once it is closed. */
+export function modal(title: string, ...children: Node[]): HTMLDialogElement {
   const heading = element('h2', '', title);
   const dialog = element('dialog', '', heading, ...children);
   heading.id = 'dialogTitle';
@@ -144,6 +145,7 @@ function askActedOn(warning: Warning, name: string): void {
 const KEYS: [string, string][] = [
   ['A', 'acknowledge the warning of the chosen strip, or the first one open'],
   ['S', 'shelve the chosen strip’s watch'],
+  ['D', 'measure how late a warning of the chosen strip reaches you'],
   ['J K or ↓ ↑', 'next and previous strip'],
   ['← →', 'read values off the chosen strip'],
   ['+ −', 'show a shorter or longer time'],

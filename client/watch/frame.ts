@@ -24,6 +24,7 @@ export function createFrame(
   attention: Attention,
   navigation: HTMLElement,
   showKeys: () => void,
+  trial: HTMLElement,
 ): Frame {
   const header = createHeader(attention, navigation, showKeys);
   const first = createFirstVisit();
@@ -50,7 +51,7 @@ export function createFrame(
   asking.hidden = true;
   for (const each of [lost, trouble, complaint]) say(each, null);
   zoomed.hidden = true;
-  const notices = element('div', 'notices', lost, trouble, asking, complaint, zoomed);
+  const notices = element('div', 'notices', lost, trouble, asking, complaint, trial, zoomed);
   const key = legend();
   const body = element('div', 'pageBody', first.root, strips.root, key, today.root);
   host.replaceChildren(header.root, notices, body, caution(), announced);

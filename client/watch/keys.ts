@@ -2,6 +2,7 @@
 export interface KeyActions {
   acknowledge(): void;
   shelve(): void;
+  measure(): void;
   move(by: 1 | -1): void;
   read(by: 1 | -1): void;
   span(way: 'shorter' | 'longer'): void;
@@ -35,6 +36,9 @@ export function actionOf(key: string, actions: KeyActions): (() => void) | null 
     case 's':
     case 'S':
       return actions.shelve;
+    case 'd':
+    case 'D':
+      return actions.measure;
     case 'j':
     case 'J':
     case 'ArrowDown':

@@ -1,5 +1,8 @@
+import type { Trial, TrialSeen } from '../../shared-types/delivery.ts';
 import type { FeedMessage } from '../../shared-types/feed.ts';
 import type { Warning } from '../../shared-types/warning.ts';
+import { measureDelay } from '../delay/dialog.ts';
+import { createTrialNotice } from '../delay/trial.ts';
 import { mark, monotonic } from '../dom.ts';
 import { createDrawingData, draw } from '../drawingData.ts';
 import { NOTHING_YET, reduce, withPast } from '../feedState.ts';
@@ -38,12 +41,14 @@ export interface WatchPage {
  * Mounts the page and draws it from then on.
  *
  * @param navigation the links to the pages
- * @param ask called with what the page wants drawn, at once and at each change
+ * @param ask  called with what the page wants drawn, at once and at each change
+ * @param echo called with what is to be said of a trial that was shown
  */
 export function mountWatch(
   host: HTMLElement,
   navigation: HTMLElement,
   ask: (look: { seconds: number; columns: number }) => void,
+  echo: (seen: TrialSeen) => void,
 ): WatchPage {
   const server = createClock();
   const attention = createAttention();
@@ -67,12 +72,14 @@ export function mountWatch(
   const strips = createStrips(view, {
     acknowledge: (watch, upTo) => act(watch, { action: 'acknowledge', upTo, by: whoIsHere() }),
     shelve: (watch) => askToShelve(watch, nameOf(view.state, watch)),
+    measureDelay: (watch) => measureDelay(watch, nameOf(view.state, watch)),
     reset: (watch) => act(watch, { action: 'reset', by: whoIsHere() }),
     putBack: (watch, from) =>
       act(watch, { action: from === 'shelved' ? 'unshelve' : 'return to service', by: whoIsHere() }),
     explainWatching,
   });
-  const frame = createFrame(host, strips, attention, navigation, showKeys);
+  const trials = createTrialNotice();
+  const frame = createFrame(host, strips, attention, navigation, showKeys, trials.root);
 
   const look = (seconds: number, columns: number) => {
     if (seconds === view.look.seconds && columns === view.look.columns) return;
@@ -100,6 +107,10 @@ export function mountWatch(
       const watch = inHand()?.watch;
       if (watch?.rule && watch.state !== 'shelved') askToShelve(watch.watch, nameOf(view.state, watch.watch));
     },
+    measure: () => {
+      const watch = (strips.chosen() ?? strips.views().find((each) => each.watch?.rule))?.watch;
+      if (watch?.rule) measureDelay(watch.watch, nameOf(view.state, watch.watch));
+    },
     move: (by) => strips.move(by),
     read: (by) => strips.read(by),
     span: (way) => {
@@ -111,6 +122,13 @@ export function mountWatch(
     live: () => strips.live(),
     help: showKeys,
   });
+
+  const showTrial = async (trial: Trial) => {
+    const heardAt = performance.now();
+    const name = nameOf(view.state, trial.watch);
+    const tone = attention.try(`A trial of ${name}, no warning`);
+    echo(await trials.show(trial, name, heardAt, tone));
+  };
 
   let wanted: StripPlace | null = null;
   const goTo = () => {
@@ -202,6 +220,7 @@ export function mountWatch(
       view.state = reduce(view.state, message);
       draw(view.data, view.state, message, view.look, heard);
       if (message.kind === 'warning') callFor(message.warning);
+      if (message.kind === 'trial') void showTrial(message.trial);
       if ((message.kind === 'welcome' || message.kind === 'watch') && !chosenLook) {
         const rules = [...view.state.watches.values()].filter(
           (watch) => watch.use === 'in use' && watch.rule !== null,

@@ -1,6 +1,7 @@
 import { describe, expect, it } from 'vitest';
 import { NOTHING_YET, reduce, SWITCHES_KEPT, WARNINGS_KEPT, withPast } from '../../client/feedState.ts';
 import type { FeedMessage } from '../../shared-types/feed.ts';
+import { delay } from './delay/fixtures.ts';
 import { channel, switchAt, warning, watch } from './fixtures.ts';
 
 const welcome: FeedMessage = {
@@ -82,6 +83,13 @@ describe('what the server says becomes the page’s state', () => {
     const troubled = reduce(NOTHING_YET, { kind: 'trouble', text: 'the disk is full' });
     expect(troubled.trouble).toBe('the disk is full');
     expect(reduce(troubled, { kind: 'trouble', text: null }).trouble).toBeNull();
+  });
+
+  it('keeps the newest measured delay of each watch, from the welcome on', () => {
+    const known = reduce(NOTHING_YET, { kind: 'delay', delay: delay({ watch: 'a', trial: '1' }) });
+    const both = reduce(known, { kind: 'delay', delay: delay({ watch: 'b', trial: '2' }) });
+    const newer = reduce(both, { kind: 'delay', delay: delay({ watch: 'a', trial: '3' }) });
+    expect([...newer.delays.values()].map(({ trial }) => trial)).toEqual(['3', '2']);
   });
 
   it('grows no further than its limits', () => {

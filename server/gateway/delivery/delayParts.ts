@@ -25,11 +25,11 @@ const lastOf = ({ t0, dt, times, values }: FrameToStore): number =>
 
 const plausible = (age: number): boolean => age >= 0 && age < OLDEST_SECONDS;
 
-/** Seconds in three digits: "0.25 s", "12.3 s"; below a thousandth in milliseconds of one digit. */
+/** Seconds in two digits: "0.25 s", "12 s"; below a tenth in milliseconds. */
 export const secondsText = (seconds: number): string =>
   Math.abs(seconds) < 0.0995
     ? `${Number((1000 * seconds).toPrecision(2))} ms`
-    : `${Number(seconds.toPrecision(3))} s`;
+    : `${seconds < 99.5 ? Number(seconds.toPrecision(2)) : Math.round(seconds)} s`;
 
 const measured = (seconds: number, text: string): DelayPart => ({ seconds, how: 'measured', text });
 const estimated = (seconds: number, text: string): DelayPart => ({ seconds, how: 'estimated', text });
@@ -40,13 +40,16 @@ export function rigPart({ answer, newest, roundTrip }: ChannelFindings): DelayPa
   const frame = answer?.frame ?? newest?.frame;
   if (frame === undefined) return notMeasured('no frame came');
   const length = lastOf(frame) - firstOf(frame);
-  const held = `the frame held ${secondsText(length)} of samples`;
+  const held =
+    frame.values.length === 1
+      ? 'the frame held one sample'
+      : `the frame held ${secondsText(length)} of samples`;
   if (answer !== null && answer.sentAt !== null) {
     const age = answer.sentAt - lastOf(answer.frame);
     if (plausible(age))
       return measured(
         length + age,
-        `${held}, its newest was ${secondsText(age)} old when the producer sent it`,
+        `${held}${frame.values.length === 1 ? '' : ', its newest'}, ${secondsText(age)} old when the producer sent it`,
       );
   }
   const why = answer === null ? 'the producer did not answer' : 'the producer did not say when it was sent';
@@ -95,7 +98,11 @@ export function pageParts(
       : notMeasured(sent === 0 ? 'no page is open' : `no page painted it${but || ': it is hidden'}`),
     tone: Number.isFinite(tone)
       ? measured(tone, `until it began, as the browser tells${but}`)
-      : notMeasured(pages.length === 0 ? 'no page answered' : 'it is switched off'),
+      : notMeasured(
+          pages.length === 0
+            ? 'no page answered'
+            : 'it is switched off, or the browser plays nothing before it is clicked',
+        ),
   };
 }
 

@@ -8,6 +8,7 @@ function pressed(key: string): string[] {
   const actions: KeyActions = {
     acknowledge: note('acknowledge'),
     shelve: note('shelve'),
+    measure: note('measure'),
     move: note('move'),
     read: note('read'),
     span: note('span'),
@@ -24,6 +25,7 @@ describe('the keys', () => {
       [
         'a',
         'S',
+        'D',
         'j',
         'ArrowDown',
         'K',
@@ -38,6 +40,7 @@ describe('the keys', () => {
     ).toEqual([
       'acknowledge',
       'shelve',
+      'measure',
       'move 1',
       'move 1',
       'move -1',

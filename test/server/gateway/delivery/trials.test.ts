@@ -216,7 +216,7 @@ describe('a trial', () => {
     await sleep(250);
     const { json } = await measure();
     expect(json.page).toMatchObject({ how: 'measured', text: expect.stringContaining('1 of 2 pages') });
-    expect(json.tone).toMatchObject({ how: 'not measured', text: 'it is switched off' });
+    expect(json.tone).toMatchObject({ how: 'not measured', text: expect.stringContaining('switched off') });
   });
 
   it('leaves a program alone, and a webhook that wants none', async () => {
