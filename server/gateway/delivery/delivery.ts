@@ -150,8 +150,11 @@ export function createDeliveries(needs: DeliveryNeeds): Deliveries {
     });
   };
 
-  /** the moment on the server's clock at which a channel's time has come to `to` */
-  const serverTimeOf = (channel: string, to: number) => now() + to - (needs.channelTime(channel) ?? to);
+  /** when a warning's span is over, by the server's clock */
+  const overAt = ({ channels, madeAt, at, to }: Warning): number => {
+    const time = needs.channelTime(channels[0]!);
+    return time === null ? madeAt + to - at : now() + to - time;
+  };
 
   /** `known` false: it is new for sure and sent while it is being written */
   const send = (warning: Warning, kind: 'issued' | 'graded', known: boolean) => {
@@ -159,8 +162,7 @@ export function createDeliveries(needs: DeliveryNeeds): Deliveries {
     const why = state === null ? false : withheld(state, warning);
     if (state === null || why === false) return;
     const madeAt = now();
-    const until =
-      kind === 'issued' ? serverTimeOf(warning.channels[0]!, warning.to) : madeAt + OUTCOME_SECONDS;
+    const until = kind === 'issued' ? overAt(warning) : madeAt + OUTCOME_SECONDS;
     const event = warningEvent(
       warning,
       kind,
@@ -200,7 +202,8 @@ export function createDeliveries(needs: DeliveryNeeds): Deliveries {
     }
     if (receivers.length === 0) return;
     for (const warning of await store.warnings({ newest: true, most: LOOKED_THROUGH }))
-      if (warning.outcome === 'open' && !warning.quiet) send(warning, 'issued', true);
+      if (warning.outcome === 'open' && !warning.quiet && overAt(warning) > now())
+        send(warning, 'issued', true);
   };
 
   return {

@@ -242,6 +242,20 @@ describe('after a stop', () => {
     expect(eventIn(came[0]!).data.at).toBeCloseTo(2.1, 9);
   });
 
+  it('an open warning whose span is over is left alone: a new receiver hears nothing of the past', async () => {
+    const folder = temporaryFolder();
+    const first = await watched([], { folder, horizon: 1 });
+    await first.send(0, WARNING_FRAME + 1);
+    await first.close();
+    await new Promise((resolve) => setTimeout(resolve, 1100));
+    const { url, came } = await receiver();
+    const second = await watched([{ name: 'lamp', url }], { folder, horizon: 1 });
+    expect(await second.warnings()).toMatchObject([{ outcome: 'open' }]);
+    await new Promise((resolve) => setTimeout(resolve, 300));
+    expect(await second.deliveries()).toEqual([]);
+    expect(came).toEqual([]);
+  });
+
   it('what waits for a receiver that settings.json names no more is given up', async () => {
     const folder = temporaryFolder();
     const { url } = await receiver(() => {});
