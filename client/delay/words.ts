@@ -25,7 +25,7 @@ function leftText(leastLead: number, left: number): string {
 /** The strip's own line: how late, when it was measured, what is left. */
 export function delayLine({ total, at, left }: MeasuredDelay): string {
   const remains = left === null || left > 0 ? '' : ': that eats the least lead';
-  return `reaches you ${delayText(total)} late, by the trial of ${clockText(at).slice(0, 5)}${remains}`;
+  return `a warning reaches you ${delayText(total)} late, measured at ${clockText(at).slice(0, 5)}${remains}`;
 }
 
 /** A line of the table: a part of the way, how long it took, and how that is known. */

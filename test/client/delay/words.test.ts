@@ -18,7 +18,7 @@ describe('a measured delay in words', () => {
   });
 
   it('says when it was measured, on the strip', () => {
-    expect(delayLine(delay())).toBe('reaches you 0.32 s late, by the trial of 22:13');
+    expect(delayLine(delay())).toBe('a warning reaches you 0.32 s late, measured at 22:13');
   });
 
   it('has a row for each part, tells estimates from measurements, and says what is missing', () => {
