@@ -51,7 +51,9 @@ export function verdictOf(task: VerdictTask): Verdict {
     perfect !== null && perfect < LEAST_PERFECT_SKILL
       ? ` The horizon is too long for such frequent ${pluralOf(word)}: even a perfect warner would have a skill of ${thousandths(perfect)}.`
       : '';
-  return { kind, than, sentence: `${sentence}${crowded}` };
+  const beyond = kind === 'no skill' || kind === 'no better than' ? ceilingFault(task) : null;
+  const asked = beyond === null ? '' : ` Nor does it keep within what was asked for: ${beyond}.`;
+  return { kind, than, sentence: `${sentence}${asked}${crowded}` };
 }
 
 function firstThatApplies(task: VerdictTask): Verdict {
@@ -123,16 +125,23 @@ function tooFewWords({ perHour, judgedShare, word }: VerdictTask, total: number)
 }
 
 /** Why a watch with skill is still not called useful; null: nothing. */
-function faultOf({ score, ceiling, fittedOnJudged }: VerdictTask): string | null {
+function faultOf(task: VerdictTask): string | null {
+  if (task.fittedOnJudged)
+    return 'the model was fitted on data judged here, so this says nothing about new data';
+  const cameTrue = task.score.cameTrue.value ?? 0;
+  const few = cameTrue < 0.5 ? `only ${percent(cameTrue)} of the warnings came true, fewer than half` : null;
+  return ceilingFault(task) ?? few;
+}
+
+/** How the judged part went beyond what was asked for; null: it did not. */
+function ceilingFault({ score, ceiling }: VerdictTask): string | null {
   const { watchedSeconds } = score;
   const cameTrue = score.cameTrue.value ?? 0;
   const falsePerHour = score.falsePerHour.value ?? 0;
-  if (fittedOnJudged) return 'the model was fitted on data judged here, so this says nothing about new data';
   if (ceiling.falsePerHour !== null && falsePerHour > ceiling.falsePerHour)
     return `${falseRateWords(falsePerHour, watchedSeconds)}, outside the ceiling of ${short(inUnit(ceiling.falsePerHour, rateUnitOf(watchedSeconds)))}`;
   if (ceiling.cameTrue !== null && cameTrue < ceiling.cameTrue)
     return `only ${percent(cameTrue)} of the warnings came true, outside the ceiling of ${percent(ceiling.cameTrue)}`;
-  if (cameTrue < 0.5) return `only ${percent(cameTrue)} of the warnings came true, fewer than half`;
   return null;
 }
 

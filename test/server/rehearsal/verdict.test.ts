@@ -78,6 +78,15 @@ describe('the verdict', () => {
     expect(of({ ceiling: { falsePerHour: null, cameTrue: 0.9 } }).kind).toBe('weak');
   });
 
+  it('says that the ceiling was broken also where that is not the reason', () => {
+    const ceiling = { falsePerHour: 0.7, cameTrue: null };
+    expect(of({ ceiling }, { pValue: 0.5 }).sentence).toContain('Nor does it keep within what was asked for');
+    expect(of({ rival: equal, ceiling }).sentence).toMatch(
+      /Nor does it keep .* outside the ceiling of 0\.7\.$/,
+    );
+    expect(of({ rival: equal }).sentence).not.toContain('Nor does');
+  });
+
   it('is never useful when the model was fitted on what is judged', () => {
     const { kind, sentence } = of({ fittedOnJudged: true });
     expect(kind).toBe('weak');
