@@ -1,7 +1,7 @@
 import { existsSync } from 'node:fs';
 import { parseArgs } from 'node:util';
 import type { Role } from '../../shared-types/access.ts';
-import { createToken, readTokens, type TokenRecord, withdrawToken } from '../gateway/accessTokens.ts';
+import { createToken, readTokens, type TokenRecord, withdrawToken } from '../gateway/access/accessTokens.ts';
 import { InputError } from '../signal/inputError.ts';
 import { dataFolder } from './backup.ts';
 import { printJson, runCommand } from './options.ts';

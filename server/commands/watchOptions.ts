@@ -1,9 +1,9 @@
 import { appendFileSync, closeSync, openSync } from 'node:fs';
 import { readFile } from 'node:fs/promises';
 import { createSecureContext } from 'node:tls';
-import { readTokens } from '../gateway/accessTokens.ts';
-import { isLoopback } from '../gateway/hostCheck.ts';
-import type { Tls } from '../gateway/httpServer.ts';
+import { readTokens } from '../gateway/access/accessTokens.ts';
+import { isLoopback } from '../gateway/access/hostCheck.ts';
+import type { Tls } from '../gateway/http/httpServer.ts';
 import { createLog, type Log } from '../gateway/logLines.ts';
 import { InputError } from '../signal/inputError.ts';
 

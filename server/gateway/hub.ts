@@ -4,20 +4,25 @@ import type { Hello, IngestErrorCode } from '../../shared-types/ingest.ts';
 import type { Model } from '../../shared-types/model.ts';
 import type { Settings } from '../../shared-types/settings.ts';
 import type { FrameToStore, Store } from '../store/store.ts';
-import { createChannelClocks } from './channelClocks.ts';
-import { type Channels, createChannels, type Moment } from './channels.ts';
+import { createChannelClocks } from './channels/channelClocks.ts';
+import { type Channels, createChannels, type Moment } from './channels/channels.ts';
 import { type Counts, createCounts } from './counts.ts';
 import { createDeliveries, type Deliveries } from './delivery/delivery.ts';
 import type { OpenReceiver } from './delivery/receivers.ts';
 import { createTrials, type TrialProducer, type Trials } from './delivery/trials.ts';
-import { createIngestSession, type IngestDoors, type IngestSession, type Refusal } from './ingestSession.ts';
+import {
+  createIngestSession,
+  type IngestDoors,
+  type IngestSession,
+  type Refusal,
+} from './ingest/ingestSession.ts';
+import { createRecorder, type Recorder } from './ingest/recorder.ts';
 import { createJournal, type Journal } from './journal.ts';
-import { createKeeping } from './keeping.ts';
-import { createLeftOut, type LeftOutRegistry } from './leftOut.ts';
 import type { Log } from './logLines.ts';
-import { createRecorder, type Recorder } from './recorder.ts';
-import type { Surroundings } from './runningWatch.ts';
-import { createWatches, type Watches } from './watches.ts';
+import { createKeeping } from './watches/keeping.ts';
+import { createLeftOut, type LeftOutRegistry } from './watches/leftOut.ts';
+import type { Surroundings } from './watches/runningWatch.ts';
+import { createWatches, type Watches } from './watches/watches.ts';
 
 /** New steps of a watch's variable. */
 export interface TracedSteps {

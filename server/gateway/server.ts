@@ -5,23 +5,23 @@ import { INGEST_PROTOCOL } from '../../shared-types/ingest.ts';
 import type { Model } from '../../shared-types/model.ts';
 import { Settings } from '../../shared-types/settings.ts';
 import type { Store } from '../store/store.ts';
-import { type Access, type Identity, openAccess } from './access.ts';
-import { may } from './accessRules.ts';
-import type { Moment } from './channels.ts';
+import { type Access, type Identity, openAccess } from './access/access.ts';
+import { may } from './access/accessRules.ts';
+import { createHostCheck, inUrl } from './access/hostCheck.ts';
+import type { Moment } from './channels/channels.ts';
+import { createServerClock, machineClock, stepText } from './channels/serverClock.ts';
 import type { OpenReceiver } from './delivery/receivers.ts';
-import { createHostCheck, inUrl } from './hostCheck.ts';
-import { createHttpApp } from './http.ts';
-import { routesOf } from './httpRoutes.ts';
-import { createHttpServer, listening, type Tls } from './httpServer.ts';
+import { createHttpApp } from './http/http.ts';
+import { routesOf } from './http/httpRoutes.ts';
+import { createHttpServer, listening, type Tls } from './http/httpServer.ts';
+import { socketServer, takeUpgrade } from './http/upgrades.ts';
 import { createHub, type Hub } from './hub.ts';
 import { type Log, sparing } from './logLines.ts';
-import { createMetrics } from './metrics.ts';
-import { createPlays, type Player } from './plays.ts';
-import { createRehearsals } from './rehearsals.ts';
-import type { Surroundings } from './runningWatch.ts';
-import { createServerClock, machineClock, stepText } from './serverClock.ts';
+import { createMetrics } from './metrics/metrics.ts';
+import { createPlays, type Player } from './rehearsals/plays.ts';
+import { createRehearsals } from './rehearsals/rehearsals.ts';
 import { goodbye, putOut, servePages, serveProducers, watchLiveness } from './sockets.ts';
-import { socketServer, takeUpgrade } from './upgrades.ts';
+import type { Surroundings } from './watches/runningWatch.ts';
 
 export interface ServerOptions {
   /** 0: any free port */

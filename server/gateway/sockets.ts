@@ -1,10 +1,10 @@
 import type { IncomingMessage } from 'node:http';
 import type { WebSocket, WebSocketServer } from 'ws';
-import type { Identity } from './access.ts';
-import { mayFeed } from './accessRules.ts';
-import { createAllowance } from './allowance.ts';
-import { createFeedSession, type FeedFacts } from './feed.ts';
+import type { Identity } from './access/access.ts';
+import { mayFeed } from './access/accessRules.ts';
+import { createFeedSession, type FeedFacts } from './feed/feed.ts';
 import type { Hub } from './hub.ts';
+import { createAllowance } from './ingest/allowance.ts';
 import type { Log } from './logLines.ts';
 
 const GOING_AWAY = 1001;

@@ -3,7 +3,7 @@ import { mkdirSync } from 'node:fs';
 import { join } from 'node:path';
 import type { Browser, Page } from 'playwright-core';
 import { afterAll, beforeAll, describe, expect, it } from 'vitest';
-import { createToken, readTokens, withdrawToken } from '../../server/gateway/accessTokens.ts';
+import { createToken, readTokens, withdrawToken } from '../../server/gateway/access/accessTokens.ts';
 import { type Built, complaintsOf, dataFolder, findChromium, openBrowser, startBuilt } from './support.ts';
 
 /** A folder that pictures of the pages are put into, to be looked at; unset: none are taken. */

@@ -2,7 +2,7 @@
 import { readdirSync, statSync } from 'node:fs';
 import { join } from 'node:path';
 import { expect, it } from 'vitest';
-import { createKeeping } from '../../server/gateway/keeping.ts';
+import { createKeeping } from '../../server/gateway/watches/keeping.ts';
 import { createStoreThread } from '../../server/store/storeThread.ts';
 import { frame, temporaryFolder } from '../server/store/temporaryFolder.ts';
 import { report, WHOLE } from './report.ts';

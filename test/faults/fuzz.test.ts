@@ -7,7 +7,7 @@ import { join } from 'node:path';
 import { Encoder } from 'cbor-x';
 import fc from 'fast-check';
 import { describe, expect, it } from 'vitest';
-import { decodeMessage } from '../../server/gateway/ingestFrame.ts';
+import { decodeMessage } from '../../server/gateway/ingest/ingestFrame.ts';
 import { startServer } from '../../server/gateway/server.ts';
 import { modelFromJson } from '../../server/model/modelFile.ts';
 import { readCsv } from '../../server/recordings/csv.ts';

@@ -3,10 +3,10 @@ import type { DelayPart, MeasuredDelay, Trial, TrialSeen } from '../../../shared
 import type { FeedMessage } from '../../../shared-types/feed.ts';
 import type { WatchState } from '../../../shared-types/watch.ts';
 import type { FrameToStore, Store } from '../../store/store.ts';
-import type { Moment } from '../channels.ts';
-import type { TrialMark } from '../ingestFrame.ts';
+import type { Moment } from '../channels/channels.ts';
+import type { TrialMark } from '../ingest/ingestFrame.ts';
 import type { Journal } from '../journal.ts';
-import { Refused } from '../watches.ts';
+import { Refused } from '../refused.ts';
 import { trialEvent } from './cloudEvent.ts';
 import {
   type ChannelFindings,

@@ -4,8 +4,8 @@ import { Decoder } from 'cbor-x';
 import { afterEach, expect, it } from 'vitest';
 import { type WebSocket, WebSocketServer } from 'ws';
 import { createProducer, type Producer, type ProducerState } from '../../../server/commands/producer.ts';
-import { createAccess } from '../../../server/gateway/access.ts';
-import { createToken } from '../../../server/gateway/accessTokens.ts';
+import { createAccess } from '../../../server/gateway/access/access.ts';
+import { createToken } from '../../../server/gateway/access/accessTokens.ts';
 import { serve, until } from '../gateway/harness.ts';
 import { temporaryFolder } from '../store/temporaryFolder.ts';
 

@@ -4,7 +4,7 @@ import { join } from 'node:path';
 import { fileURLToPath } from 'node:url';
 import { describe, expect, it } from 'vitest';
 import { asksForTokens, logChoice, tlsChoice } from '../../../server/commands/watchOptions.ts';
-import { createToken } from '../../../server/gateway/accessTokens.ts';
+import { createToken } from '../../../server/gateway/access/accessTokens.ts';
 import { temporaryFolder } from '../store/temporaryFolder.ts';
 
 const program = fileURLToPath(new URL('../../../dist/server/commands/main.js', import.meta.url));

@@ -1,5 +1,5 @@
 import { describe, expect, it } from 'vitest';
-import { createAllowance } from '../../../server/gateway/allowance.ts';
+import { createAllowance } from '../../../server/gateway/ingest/allowance.ts';
 import { createLog, type LogLine, sparing } from '../../../server/gateway/logLines.ts';
 
 const LINE: LogLine = { level: 'notice', event: 'request', text: 'a "b"\nc', who: 'desk', status: 201 };

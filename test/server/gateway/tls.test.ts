@@ -5,8 +5,8 @@ import { join } from 'node:path';
 import { connect as connectTls } from 'node:tls';
 import { describe, expect, it } from 'vitest';
 import { WebSocket } from 'ws';
-import { createAccess } from '../../../server/gateway/access.ts';
-import { createToken } from '../../../server/gateway/accessTokens.ts';
+import { createAccess } from '../../../server/gateway/access/access.ts';
+import { createToken } from '../../../server/gateway/access/accessTokens.ts';
 import { temporaryFolder } from '../store/temporaryFolder.ts';
 import { serve } from './harness.ts';
 

@@ -35,8 +35,9 @@ const model = chooseSettings(task);
 describe('the search alone', () => {
   it('chooses what a whole rehearsal of the forcing chooses, with the same score', () => {
     const whole = modelFromJson(runRehearsal(task).model);
-    const { operating, ...rest } = whole;
+    const { operating, verdict, ...rest } = whole;
     expect(operating).not.toBeNull();
+    expect(verdict).toBeDefined();
     const { operating: none, ...mine } = model;
     expect(none ?? null).toBeNull();
     expect({ ...mine, diagnostics: null }).toEqual({ ...rest, diagnostics: null });
