@@ -93,7 +93,7 @@ function readOr<T>(read: () => T, ...faults: (abstract new (...args: never[]) =>
 }
 
 /** Every place of the HTTP interface, as its source has them; `*` for a part that varies. */
-const gateway = new URL('../../server/gateway/', import.meta.url);
+const gateway = new URL('../../server/gateway/http/', import.meta.url);
 const PLACES = readdirSync(gateway)
   .filter((name) => name.startsWith('http'))
   .flatMap((name) => readFileSync(new URL(name, gateway), 'utf8').match(/'\/(?:api|health)[^']*'/g) ?? [])
