@@ -157,6 +157,8 @@ export function createRunningWatch(
       around.channels.newest(memo.channels[0]!) ?? happening.at,
     );
     const [from, to] = [happening.at + rule.leastLead, happening.at + rule.horizon];
+    // without a least lead a span begins with its warning: then it is too late only once it is over
+    const tooLate = now > (rule.leastLead > 0 ? from : to);
     const warning: Warning = {
       id: 0,
       watch: memo.watch,
@@ -175,8 +177,8 @@ export function createRunningWatch(
       lead: null,
       acknowledgedAt: null,
       acknowledgedBy: null,
-      quiet: now > from,
-      called: now <= from && memo.use === 'in use' && !trigger && memo.alarm.setAside === null,
+      quiet: tooLate,
+      called: !tooLate && memo.use === 'in use' && !trigger && memo.alarm.setAside === null,
     };
     book.issue(warning);
     around.journal.issue(warning);

@@ -6,9 +6,9 @@ import type { LogEntry, Warning } from '../../../../shared-types/warning.ts';
 import { swingModel } from '../harness.ts';
 
 /** A watch that says what it is told to say, one step a frame. */
-function scripted() {
+function scripted(leastLead = 10) {
   const model = swingModel();
-  model.rule = { ...model.rule!, leastLead: 10, horizon: 20 };
+  model.rule = { ...model.rule!, leastLead, horizon: 20 };
   let next: Happening[] = [];
   let now = 0;
   const watch: Watch = {
@@ -164,6 +164,18 @@ describe('whom a warning called', () => {
       [0, true],
       [40, false],
     ]);
+  });
+});
+
+describe('a warning that comes too late to speak', () => {
+  it('is one made after its span began; without a least lead, after it was over', () => {
+    const quiet = (leastLead: number, late: number) => {
+      const { at, told } = scripted(leastLead);
+      at(late, warning(0));
+      return told[0]!.quiet;
+    };
+    expect([quiet(10, 10), quiet(10, 10.1)]).toEqual([false, true]);
+    expect([quiet(0, 0.2), quiet(0, 20), quiet(0, 20.1)]).toEqual([false, false, true]);
   });
 });
 
