@@ -6,6 +6,7 @@ import { recall, remember } from '../remembered.ts';
 import { choiceControl, createField, type Field, offer, textControl } from './fields.ts';
 import { checkForm, type FieldName, type FormTexts, readForm } from './formCheck.ts';
 import { createLeftOutFields } from './leftOutFields.ts';
+import { offerMeasuredDelay } from './measuredDelay.ts';
 import { createPreview } from './preview.ts';
 import { createRecordingList } from './recordingList.ts';
 import { createRuleField } from './ruleField.ts';
@@ -35,6 +36,7 @@ export function createForm(run: (request: RehearsalRequest) => void): RehearseFo
   let tried = false;
   const channel = choiceControl([]);
   const fields = numberFields();
+  const measured = offerMeasuredDelay(fields.delay);
   const channelField = createField(channel, { name: 'Channel', help: 'What is to be watched.' });
   const recordingList = createRecordingList((names) => change({ recordings: names }));
   const rule = createRuleField(() => change({ regime: rule.text(), regimeChannel: rule.channel() }));
@@ -88,6 +90,7 @@ export function createForm(run: (request: RehearsalRequest) => void): RehearseFo
     const range = chosen();
     const state = channels.find((each) => each.channel === texts.channel);
     const others = channels.map((each) => each.channel).filter((name) => name !== texts.channel);
+    measured.of(texts.channel);
     rule.offer(others, unitOf(texts.regimeChannel || texts.channel));
     leftOut.of(
       texts.channel,

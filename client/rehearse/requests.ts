@@ -1,5 +1,6 @@
 import { decode } from 'cbor-x/decode-no-eval';
 import type { ChannelState } from '../../shared-types/channel.ts';
+import type { MeasuredDelay } from '../../shared-types/delivery.ts';
 import type {
   Condition,
   Mark,
@@ -12,6 +13,7 @@ import type {
   StoredCondition,
   SwitchCard,
 } from '../../shared-types/rehearsal.ts';
+import type { WatchState } from '../../shared-types/watch.ts';
 import { readCard, type SentCard } from '../card/readCard.ts';
 import type { FetchedColumns } from '../columns.ts';
 import { ask, reach, send } from '../requests.ts';
@@ -142,3 +144,11 @@ export const addCondition = async (condition: Condition): Promise<unknown> =>
   await send('/api/conditions', condition);
 export const removeCondition = async (id: number): Promise<unknown> =>
   await ask(`/api/conditions/${id}`, { method: 'DELETE' });
+
+/** The delay last measured for a watch of a channel; null: none was. */
+export async function measuredDelay(channel: string): Promise<MeasuredDelay | null> {
+  const watches = (await ask('/api/watches')) as WatchState[];
+  const watch = watches.find(({ channels, use }) => channels[0] === channel && use === 'in use');
+  if (watch === undefined) return null;
+  return (await ask(`/api/watches/${encodeURIComponent(watch.watch)}/delay`)) as MeasuredDelay | null;
+}

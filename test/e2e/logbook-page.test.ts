@@ -113,7 +113,9 @@ describe.runIf(findChromium() !== null)('the Logbook page of the demo, in a brow
   });
 
   it('opens the card of a switch: words, two drawn lines, and values read off by the arrow keys', async () => {
-    const row = page.locator(`${ROWS}[data-kind="switch"]`, { hasText: 'warned' }).nth(1);
+    // by its key: while one reads, newer lines come above it
+    const second = page.locator(`${ROWS}[data-kind="switch"]`, { hasText: 'warned' }).nth(1);
+    const row = page.locator(`.logRow[data-key="${await second.getAttribute('data-key')}"]`);
     const open = row.getByRole('button', { name: /^Card of the switch/ });
     await open.click();
     const card = page.locator('.card');

@@ -84,6 +84,25 @@ describe.runIf(findChromium() !== null)('the Rehearse page of the demo, in a bro
     expect(await getJson<RehearsalState[]>(server.port, '/api/rehearsals')).toEqual([]);
   });
 
+  it('offers the delay that was measured for the channel, to be charged to every lead', async () => {
+    const [watch] = (await getJson<WatchState[]>(server.port, '/api/watches')).filter(
+      ({ channels }) => channels[0] === 'Loop B',
+    );
+    const trial = await fetch(`http://127.0.0.1:${server.port}/api/watches/${watch!.watch}/trials`, {
+      method: 'POST',
+      headers: { 'content-type': 'application/json' },
+      body: '{}',
+    });
+    expect(trial.status).toBe(200);
+    await page.reload();
+    await page.locator('[data-loaded]').waitFor();
+    await page.locator('.more summary').click();
+    await page.getByRole('button', { name: /^Charge the [\d.]+ s that were measured/ }).click();
+    const delay = page.getByLabel('Delivery takes');
+    expect(Number(await delay.inputValue())).toBeGreaterThan(0);
+    await delay.fill('0');
+  });
+
   it('leaves a stretch out that is drawn over, and takes it back', async () => {
     const paper = page.locator('.formSignal .rollPaper');
     const box = (await paper.boundingBox())!;
