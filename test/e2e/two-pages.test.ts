@@ -79,7 +79,7 @@ describe.runIf(findChromium() !== null)('two people at two pages', () => {
     await strip(ada).getByRole('button', { name: 'Acknowledge' }).click();
     await until('the other page shows it', async () => !/▲ unacknowledged/.test((await badge(ben))!), SEEN);
     await until('both say the same', async () => (await badge(ben)) === (await badge(ada)), SEEN);
-  });
+  }, 150_000);
 
   it('may click at once: it is acknowledged once', async () => {
     const [ada, ben] = pages as [Page, Page];
@@ -94,7 +94,7 @@ describe.runIf(findChromium() !== null)('two people at two pages', () => {
     await until('nobody is asked', async () => (await stateOf('Loop B')).state !== 'unacknowledged', SEEN);
     const after = (await log()).filter(({ kind }) => kind === 'acknowledged').length;
     expect(after - before).toBe(1);
-  });
+  }, 150_000);
 
   it('are both told that an alarm latches, and that it no longer does', async () => {
     const [ada, ben] = pages as [Page, Page];
